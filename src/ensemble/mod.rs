@@ -1,0 +1,2 @@
+//! The ensemble: distributions, the point set, summaries. Knows no physics.
+pub mod distribution;

@@ -1,0 +1,2 @@
+//! Fire: exposure classes, the pulse, the flux on a face.
+pub mod exposure;
