@@ -20,6 +20,7 @@ import numpy as np
 from scipy.integrate import solve_ivp
 from scipy.interpolate import CubicSpline
 from scipy.optimize import brentq
+from scipy.special import erfc
 
 from reference_csv import output_path, write_table
 
@@ -288,7 +289,29 @@ def cases():
     return out
 
 
+def closed_form_check():
+    """The same solver on two linear problems with closed forms (Carslaw & Jaeger); largest error in percent of the rise."""
+    k, rho, c = 2.5, 2650.0, 800.0
+    times, depths = np.array([5.0, 60.0, 600.0]), [0, 1, 5, 20]
+    worst = 0.0
+    for forcing in ({"kind": "flux_series", "knots": [[0, 5e4]]}, series([[0, 0.0, 900, 100]], emissivity=0.0)):
+        case = {"material": constant(k, rho, c), "forcing": forcing, "initial_c": 20.0, "radius_m": None, "depths_mm": depths, "times_s": times}
+        coarse, fine = solve(case, CELLS), solve(case, 2 * CELLS)
+        got = np.array([b[0] + (b[0] - a[0]) / 3.0 for a, b in zip(coarse, fine)]) - 20.0
+        x, root = np.array(depths) * 1e-3, np.sqrt(k / (rho * c) * times)[:, None]
+        s = x / (2.0 * root)
+        if forcing["kind"] == "flux_series":
+            exact = 2.0 * 5e4 / k * root * (np.exp(-s * s) / np.sqrt(np.pi) - s * erfc(s))
+        else:
+            b = 100.0 / k
+            exact = 880.0 * (erfc(s) - np.exp(b * x + (b * root) ** 2) * erfc(s + b * root))
+        worst = max(worst, 100.0 * np.max(np.abs(got - exact)) / np.max(exact))
+    print(f"closed forms: largest error {worst:.6f} % of the rise", file=sys.stderr)
+    assert worst < 0.002
+
+
 def main():
+    closed_form_check()
     listed = cases()
     with open(output_path("conduction_cases.json"), "w") as out:
         json.dump({"about": "Inputs of conduction_nonlinear.csv; units in the names, temperatures in degrees Celsius; "
