@@ -14,6 +14,7 @@
 //! ```
 
 pub mod assess;
+pub mod bounds;
 pub mod diagnostic;
 pub mod ensemble;
 pub mod fire;
