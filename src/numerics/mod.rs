@@ -1,1 +1,5 @@
-//! See the modules below.
+//! Numbers without a domain: lanes of draws, interpolation tables, tridiagonal elimination, quantiles.
+
+pub mod lanes;
+pub mod quantile;
+pub mod table;
