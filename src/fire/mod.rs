@@ -1,2 +1,5 @@
-//! Fire: exposure classes, the pulse, the flux on a face.
+//! Fire: exposure classes, the pulse, what reaches a face.
+
 pub mod exposure;
+pub mod flame;
+pub mod pulse;

@@ -1,10 +1,11 @@
 //! Heat exchange at the face.
 //!
-//! q = e (G - sigma T^4) + h (Tg - T) + q0
+//! q = e (G - sigma T^4) + h (Tg - T) + q0 - min( hw (T - 373 K), qw ) where T > 373 K
 //!
 //! Symbols: q net flux into the rock W/m2, e emissivity of the rock, G incident irradiance W/m2, sigma the
 //! Stefan-Boltzmann constant, T face temperature K, h convective coefficient W/m2K, Tg gas temperature K, q0 a
-//! prescribed flux W/m2. The rock always re-radiates with its full emissivity.
+//! prescribed flux W/m2, hw the coefficient of boiling rain (assumption) and qw what the rain can take at most W/m2. The
+//! rock always re-radiates with its full emissivity.
 
 use crate::numerics::lanes::Lanes;
 use crate::units::STEFAN_BOLTZMANN_W_M2_K4;
@@ -22,7 +23,14 @@ pub struct Exchange {
     pub gas_k: Lanes,
     /// Prescribed net flux, W/m2.
     pub flux_w_m2: Lanes,
+    /// What rain can take at most, W/m2; 0 without rain.
+    pub rain_cap_w_m2: Lanes,
 }
+
+/// Coefficient of heat taken by rain that boils on a face, W/m2K (assumption).
+const RAIN_H_W_M2_K: f64 = 1000.0;
+/// Rain takes heat above this, K.
+const BOILING_K: f64 = 373.15;
 
 impl Exchange {
     /// Net flux into a face at `face_k`, W/m2.
@@ -31,7 +39,7 @@ impl Exchange {
     /// use spallcast::{heat::boundary::Exchange, numerics::lanes::Lanes};
     /// let fire = Exchange {
     ///     emissivity: Lanes::ONE, irradiance_w_m2: Lanes::splat(1000.0), h_w_m2_k: Lanes::splat(10.0),
-    ///     gas_k: Lanes::splat(400.0), flux_w_m2: Lanes::ZERO,
+    ///     gas_k: Lanes::splat(400.0), flux_w_m2: Lanes::ZERO, rain_cap_w_m2: Lanes::ZERO,
     /// };
     /// let q = fire.flux_into(Lanes::splat(300.0)).0[0];
     /// assert!((q - (1000.0 - 5.670374419e-8 * 300f64.powi(4) + 10.0 * 100.0)).abs() < 1e-9);
@@ -41,6 +49,7 @@ impl Exchange {
         self.emissivity * (self.irradiance_w_m2 - face_k.fourth() * STEFAN_BOLTZMANN_W_M2_K4)
             + self.h_w_m2_k * (self.gas_k - face_k)
             + self.flux_w_m2
+            - ((face_k - Lanes::splat(BOILING_K)) * RAIN_H_W_M2_K).max(Lanes::ZERO).min(self.rain_cap_w_m2)
     }
 
     /// How fast that flux falls as the face warms, -dq/dT = 4 e sigma T^3 + h, W/m2K.

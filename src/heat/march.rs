@@ -1,6 +1,6 @@
 //! A whole history: legs, steps, the energy guard, and an observer that sees every step.
 
-use super::boundary::{Exchange, SurfaceForcing};
+use super::boundary::SurfaceForcing;
 use super::column::Column;
 use super::material::Material;
 use super::step::Stepper;
@@ -34,6 +34,9 @@ pub enum Verdict {
 pub trait Observer {
     /// Looks at the column after a step.
     fn see(&mut self, column: &mut Column, moment: &Moment) -> Verdict;
+
+    /// Is told once that the march is over.
+    fn finish(&mut self, _moment: &Moment) {}
 }
 
 /// What a march took.
@@ -77,6 +80,7 @@ impl March {
             Account { steps: 0, absorbed_j_m2: Lanes::ZERO, exchanged_j_m2: Lanes::ZERO, fuel_spent: Lanes::ZERO };
         let mut live = Lanes::ONE;
         let last = forcing.legs() - 1;
+        let mut seen = None;
         for leg in 0..=last {
             let plan = forcing.leg(leg).refined(self.refine);
             let mut time_s = plan.start_s;
@@ -104,30 +108,22 @@ impl March {
                 time_s = end_s;
                 // A fire that has just gone out is out from here on.
                 now = if account.fuel_spent.largest() > 0.0 { forcing.exchange(leg, time_s, live) } else { then };
-                let verdict = observer.see(column, &self.moment(column, &now, time_s, step_s, &account, leg));
-                if leg == last && verdict == Verdict::Enough {
-                    return account;
+                let moment = Moment {
+                    time_s,
+                    step_s,
+                    flux_w_m2: now.flux_into(column.temperature_k[0]),
+                    absorbed_j_m2: account.absorbed_j_m2,
+                    leg,
+                };
+                seen = Some(moment);
+                if observer.see(column, &moment) == Verdict::Enough && leg == last {
+                    break;
                 }
             }
         }
-        account
-    }
-
-    fn moment(
-        &self,
-        column: &Column,
-        now: &Exchange,
-        time_s: Lanes,
-        step_s: Lanes,
-        account: &Account,
-        leg: usize,
-    ) -> Moment {
-        Moment {
-            time_s,
-            step_s,
-            flux_w_m2: now.flux_into(column.temperature_k[0]),
-            absorbed_j_m2: account.absorbed_j_m2,
-            leg,
+        if let Some(moment) = seen {
+            observer.finish(&moment);
         }
+        account
     }
 }

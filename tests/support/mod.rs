@@ -35,6 +35,7 @@ pub fn nothing() -> Exchange {
         h_w_m2_k: Lanes::ZERO,
         gas_k: Lanes::ZERO,
         flux_w_m2: Lanes::ZERO,
+        rain_cap_w_m2: Lanes::ZERO,
     }
 }
 

@@ -1,0 +1,134 @@
+//! Flakes: Weibull statistics of surface compression.
+//!
+//! P = 1 - exp(-B),   B = (pi C^2 / s0^m) integral of x^2 s(x)^m dx
+//! s0 = chi UCS V^(1/m) / Gamma(1 + 1/m),   V = 2.5e-4 m3
+//!
+//! A site is a disc of radius C x at depth x. Symbols: B risk of a site, C flaw coefficient, s skin compression Pa, m
+//! scatter of compressive strength within one boulder, chi spalling over laboratory strength, UCS Pa, V laboratory volume.
+//! The median site lets go when B = ln 2, at a mean depth of (integral x^3 s^m)/(integral x^2 s^m). Line of Preston &
+//! White 1934, Dey & Kranz 1985, Rauenzahn & Tester 1989 (form recalled, re-derived). Constant stress gradient gives
+//! about Gamma(3) in depth. A flake is not thinner than a grain nor than the energy floor K^2 (1 + nu) / s^2 (derived from
+//! h >= Gc E / ((1 - nu) s^2) with Gc = K^2 (1 - nu^2) / E).
+//!
+//! Quadrature: three Gauss points per cell on the linear interpolant of s; stops where s has fallen to .35 of its
+//! largest value, below which s^m adds less than 3e-4 for m >= 8.
+
+use crate::numerics::lanes::Lanes;
+
+/// Volume of a laboratory specimen, m3 (judgement).
+pub const LABORATORY_VOLUME_M3: f64 = 2.5e-4;
+/// Risk at which the median site lets go.
+pub const MEDIAN_RISK: f64 = core::f64::consts::LN_2;
+/// Flaw coefficients and their weights (judgement).
+pub const FLAW_COEFFICIENTS: [(f64, f64); 3] = [(5.0, 0.3), (10.0, 0.5), (15.0, 0.2)];
+/// Weights of the low, middle and high flakable share (judgement).
+pub const FLAKABLE_WEIGHTS: [f64; 3] = [0.25, 0.5, 0.25];
+/// Share of the largest stress below which the tail is dropped.
+const TAIL: f64 = 0.35;
+/// Gauss-Legendre points and weights on the unit interval.
+const GAUSS: [(f64, f64); 3] =
+    [(0.112_701_665_379_258_31, 5.0 / 18.0), (0.5, 8.0 / 18.0), (0.887_298_334_620_741_7, 5.0 / 18.0)];
+
+/// Scale stress s0 of the site statistics, Pa m^(3/m).
+pub fn scale_stress(spalling_share: f64, compressive_strength_pa: f64, m: f64) -> f64 {
+    spalling_share * compressive_strength_pa * libm::pow(LABORATORY_VOLUME_M3, 1.0 / m) / libm::tgamma(1.0 + 1.0 / m)
+}
+
+/// What eight draws flake by.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct FlakeDraws {
+    /// Scatter m; one per rock.
+    pub modulus: f64,
+    /// 1/s0.
+    pub per_scale: Lanes,
+    /// pi C^2.
+    pub site_area: Lanes,
+    /// One grain, m.
+    pub grain_m: f64,
+    /// K^2 (1 + nu), Pa2 m: over s^2 it is the energy floor.
+    pub energy_floor_pa2_m: Lanes,
+    /// Risk from which the flaked share of the face counts.
+    pub counted_risk: Lanes,
+}
+
+/// Risk of a site and mean depth of its disc, m, for a profile. `depth_m` and `stress_pa` are `[n]`, face first.
+#[inline(always)]
+pub fn risk(draws: &FlakeDraws, depth_m: &[Lanes], stress_pa: &[Lanes], largest_pa: Lanes) -> (Lanes, Lanes) {
+    let cut = largest_pa * TAIL;
+    let mut second = Lanes::ZERO;
+    let mut third = Lanes::ZERO;
+    let mut started = false;
+    for i in 0..depth_m.len() - 1 {
+        // Past the hot skin in every draw?
+        let beyond = (stress_pa[i] - cut).largest() < 0.0;
+        if beyond && started {
+            break;
+        }
+        started = started || !beyond;
+        let (z, h) = (depth_m[i], depth_m[i + 1] - depth_m[i]);
+        let (y, dy) = (stress_pa[i] * draws.per_scale, (stress_pa[i + 1] - stress_pa[i]) * draws.per_scale);
+        for (place, weight) in GAUSS {
+            let x = z + h * place;
+            let density = x * x * power((y + dy * place).max(Lanes::ZERO), draws.modulus) * h * weight;
+            second += density;
+            third += density * x;
+        }
+    }
+    (second * draws.site_area, third / second.max(Lanes::splat(f64::MIN_POSITIVE)))
+}
+
+/// x^m: by repeated squaring for whole m, which every catalogue rock has; by `libm` otherwise.
+#[inline(always)]
+fn power(x: Lanes, m: f64) -> Lanes {
+    let whole = m as u32;
+    if f64::from(whole) != m {
+        return x.map(|x| libm::pow(x, m));
+    }
+    let mut result = Lanes::ONE;
+    let mut square = x;
+    let mut bits = whole;
+    loop {
+        if bits & 1 == 1 {
+            result *= square;
+        }
+        bits >>= 1;
+        if bits == 0 {
+            return result;
+        }
+        square *= square;
+    }
+}
+
+/// Thickness of a flake: its mean depth, not under a grain nor the energy floor at stress `stress_pa`.
+pub fn thickness_m(mean_depth_m: f64, grain_m: f64, energy_floor_pa2_m: f64, stress_pa: f64) -> f64 {
+    mean_depth_m.max(grain_m).max(energy_floor_pa2_m / (stress_pa * stress_pa))
+}
+
+/// Closed check form: face rise at which B = ln 2 for a constant gradient q/k and linear strain (derived).
+///
+/// dT^(1 + 3/m) = [(1 - nu) s0/(alpha E)] [.693/(2 pi C^2)]^(1/m) [m q/k]^(3/m)
+pub fn closed_form_rise_k(
+    restraint_pa_per_k: f64,
+    scale_stress: f64,
+    m: f64,
+    flaw_coefficient: f64,
+    gradient_k_m: f64,
+) -> f64 {
+    let site = MEDIAN_RISK / (2.0 * core::f64::consts::PI * flaw_coefficient * flaw_coefficient);
+    let right = scale_stress / restraint_pa_per_k * libm::pow(site, 1.0 / m) * libm::pow(m * gradient_k_m, 3.0 / m);
+    libm::pow(right, 1.0 / (1.0 + 3.0 / m))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn whole_and_broken_powers_agree() {
+        let x = Lanes::splat(0.87);
+        for m in [8.0, 10.0, 13.0, 20.0] {
+            assert!((power(x, m).0[0] / libm::pow(0.87, m) - 1.0).abs() < 1e-13);
+        }
+        assert_eq!(power(x, 9.5).0[0], libm::pow(0.87, 9.5));
+    }
+}

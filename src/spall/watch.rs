@@ -1,0 +1,406 @@
+//! Follows the families of eight draws through a march.
+//!
+//! After every step: skin stress, membrane force, drive; then flake, slab, split and rind are asked in turn. First
+//! passage between two steps is placed by linear interpolation. When a slab lets go, the plate leaves during the fire with
+//! the settings' probability: the rock below becomes the face and heating goes on; if it stays it shields the rock and
+//! that face is done.
+
+use super::flake::{self, FlakeDraws, MEDIAN_RISK};
+use super::outcome::{Event, Events, Family, Outcome, SLABS_MAX};
+use super::slab::{Drive, Face, SPLIT_FACTOR, SPLIT_RADIUS_MAX_M};
+use super::vapour;
+use crate::heat::column::Column;
+use crate::heat::march::{Account, Moment, Observer, Verdict};
+use crate::heat::material::Material;
+use crate::numerics::lanes::{LANES, Lanes};
+use crate::stress::skin::{SkinDraws, SkinLaw, membrane_force_n_m};
+use crate::units::ICE_POINT_K;
+
+/// The march may stop once the face is colder than this, K, and the drive below this share of its largest value.
+const COLD_FACE_K: f64 = 100.0 + ICE_POINT_K;
+const PAST_PEAK: f64 = 0.95;
+
+/// What one draw is held against in tension.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct SlabDraw {
+    /// Cold strength, Pa.
+    pub strength_pa: f64,
+    /// The strength is limited by toughness, so the toughness law applies to it when hot.
+    pub toughness_limited: bool,
+    /// Factor on the slab depth from scatter.
+    pub depth_factor: f64,
+    /// Slab depth over patch radius where the patch governs.
+    pub patch_depth: f64,
+    /// Uniform number that decides whether plates leave.
+    pub leaves_u: f64,
+    /// Boulder radius, m; `None` on a flat face, which cannot split.
+    pub radius_m: Option<f64>,
+}
+
+/// What one draw's rind is held against.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct RindDraw {
+    /// Recorded depth, m.
+    pub depth_m: f64,
+    /// Mean compression that buckles it, Pa.
+    pub buckling_pa: f64,
+    /// Strength of its plane over that of fresh rock.
+    pub plane_share: f64,
+}
+
+/// Pore pressure of one draw.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct WetDraw {
+    /// Porosity.
+    pub porosity: f64,
+}
+
+/// Laws and draws of one batch.
+pub struct WatchDraws<'a> {
+    /// Strain and stiffness of the rock.
+    pub skin_law: &'a SkinLaw,
+    /// Skin of the draws.
+    pub skin: SkinDraws,
+    /// Flakes.
+    pub flake: FlakeDraws,
+    /// Geometry of the face.
+    pub face: Face,
+    /// Slabs.
+    pub slab: [SlabDraw; LANES],
+    /// Rinds, where recorded.
+    pub rind: Option<[RindDraw; LANES]>,
+    /// Pore pressure, where wet.
+    pub wet: Option<[WetDraw; LANES]>,
+    /// Residual tensile strength over the cold one, by the temperature reached, K.
+    pub tensile_factor: &'a dyn Fn(f64) -> f64,
+    /// Residual toughness likewise.
+    pub toughness_factor: &'a dyn Fn(f64) -> f64,
+    /// Probability that a plate leaves.
+    pub leaves_probability: f64,
+    /// Slabs that may follow one another.
+    pub generations_max: usize,
+}
+
+/// State of one draw between steps.
+#[derive(Debug, Clone, Copy)]
+struct DrawState {
+    /// Drive less strength at the previous step, Pa.
+    margin_pa: f64,
+    /// Slab depth and face temperature at the previous step.
+    depth_m: f64,
+    surface_k: f64,
+    risk: f64,
+    flake_depth_m: f64,
+    flake_stress_pa: f64,
+    peak_drive_pa: f64,
+    slabs: usize,
+    leaves_u: f64,
+    /// A plate that stayed shields the face, or the generations are used up.
+    done: bool,
+    split: bool,
+    rind_gone: bool,
+    flake_open: bool,
+}
+
+/// The observer.
+pub struct Watch<'a> {
+    draws: &'a WatchDraws<'a>,
+    material: &'a Material<'a>,
+    stress_pa: Vec<Lanes>,
+    tension_pa: Vec<Lanes>,
+    state: [DrawState; LANES],
+    outcome: [Outcome; LANES],
+    /// Force and drive of the last step, for probes.
+    last: (Lanes, Drive),
+}
+
+impl<'a> Watch<'a> {
+    /// A watch over a batch whose columns have `n` nodes.
+    pub fn new(draws: &'a WatchDraws<'a>, material: &'a Material<'a>, n: usize) -> Watch<'a> {
+        let state = std::array::from_fn(|l| DrawState {
+            margin_pa: -draws.slab[l].strength_pa,
+            depth_m: 0.0,
+            surface_k: 0.0,
+            risk: 0.0,
+            flake_depth_m: 0.0,
+            flake_stress_pa: 0.0,
+            peak_drive_pa: 0.0,
+            slabs: 0,
+            leaves_u: draws.slab[l].leaves_u,
+            done: draws.generations_max == 0,
+            split: false,
+            rind_gone: draws.rind.is_none(),
+            flake_open: true,
+        });
+        let outcome = std::array::from_fn(|l| Outcome {
+            peak_surface_k: 0.0,
+            peak_flux_w_m2: 0.0,
+            absorbed_j_m2: 0.0,
+            peak_stress_pa: 0.0,
+            peak_tension_pa: 0.0,
+            strength_pa: draws.slab[l].strength_pa,
+            skin_over_radius: 0.0,
+            flaked_sites: 0.0,
+            fuel_spent: false,
+            events: Events::default(),
+        });
+        let zero = Lanes::ZERO;
+        Watch {
+            draws,
+            material,
+            stress_pa: vec![zero; n],
+            tension_pa: vec![zero; n],
+            state,
+            outcome,
+            last: (zero, Drive { largest_pa: zero, convex_pa: zero, skin_m: zero }),
+        }
+    }
+
+    /// Skin stress of every node at the last step, Pa, `[n]`.
+    pub fn stress_pa(&self) -> &[Lanes] {
+        &self.stress_pa
+    }
+
+    /// Membrane force and drive at the last step.
+    pub fn force_and_drive(&self) -> (Lanes, Drive) {
+        self.last
+    }
+
+    /// What the draws did; nothing spalls below the floors of exposure.
+    pub fn outcomes(mut self, account: &Account) -> [Outcome; LANES] {
+        for (l, outcome) in self.outcome.iter_mut().enumerate() {
+            outcome.fuel_spent = account.fuel_spent.0[l] > 0.0;
+            if !outcome.above_floor() {
+                outcome.events = Events::default();
+                outcome.flaked_sites = 0.0;
+            }
+        }
+        self.outcome
+    }
+
+    fn see_flake(&mut self, lane: usize, moment: &Moment, risk: f64, depth_m: f64, stress_pa: f64, surface_k: f64) {
+        let draws = &self.draws.flake;
+        let state = &mut self.state[lane];
+        if !state.flake_open || state.done || risk <= state.risk {
+            return;
+        }
+        let outcome = &mut self.outcome[lane];
+        outcome.flaked_sites = -libm::expm1(-risk);
+        if risk >= MEDIAN_RISK {
+            // ln B is close to linear in time over a step.
+            let share =
+                if state.risk > 0.0 { libm::log(MEDIAN_RISK / state.risk) / libm::log(risk / state.risk) } else { 1.0 };
+            if state.risk < MEDIAN_RISK {
+                let mean = state.flake_depth_m + share * (depth_m - state.flake_depth_m);
+                let stress = state.flake_stress_pa + share * (stress_pa - state.flake_stress_pa);
+                outcome.events.push(Event {
+                    family: Family::Flake,
+                    time_s: moment.time_s.0[lane] - (1.0 - share) * moment.step_s.0[lane],
+                    depth_m: flake::thickness_m(mean, draws.grain_m, draws.energy_floor_pa2_m.0[lane], stress),
+                    surface_k: state.surface_k + share * (surface_k - state.surface_k),
+                });
+            }
+        }
+        state.risk = risk;
+        state.flake_depth_m = depth_m;
+        state.flake_stress_pa = stress_pa;
+    }
+
+    /// A draw whose median site never let go but whose flaked share counts: the thickness at its largest risk.
+    fn close_flake(&mut self, lane: usize, time_s: f64) {
+        let draws = &self.draws.flake;
+        let state = &mut self.state[lane];
+        if state.flake_open && state.risk < MEDIAN_RISK && state.risk >= draws.counted_risk.0[lane] {
+            let floor = draws.energy_floor_pa2_m.0[lane];
+            self.outcome[lane].events.push(Event {
+                family: Family::Flake,
+                time_s,
+                depth_m: flake::thickness_m(state.flake_depth_m, draws.grain_m, floor, state.flake_stress_pa),
+                surface_k: self.outcome[lane].peak_surface_k,
+            });
+        }
+        state.flake_open = false;
+    }
+
+    /// Strength of a draw whose cracking depth has reached `hottest_k`.
+    fn strength_pa(&self, lane: usize, hottest_k: f64) -> f64 {
+        let slab = &self.draws.slab[lane];
+        let factor = if slab.toughness_limited {
+            (self.draws.toughness_factor)(hottest_k)
+        } else {
+            (self.draws.tensile_factor)(hottest_k)
+        };
+        slab.strength_pa * factor
+    }
+
+    /// Slab of one draw; returns the thickness to strip when a plate leaves.
+    fn see_slab(&mut self, lane: usize, column: &Column, moment: &Moment, drive: &Drive) -> Option<f64> {
+        let slab = self.draws.slab[lane];
+        let largest = drive.largest_pa.0[lane];
+        let depth =
+            self.draws.face.cracking_depth_m(lane, drive, &column.grid.depth_m, &self.tension_pa, slab.patch_depth);
+        let hottest = at_depth(column, &column.hottest_k, lane, depth);
+        let margin = largest - self.strength_pa(lane, hottest);
+        let surface_k = column.temperature_k[0].0[lane];
+        let state = &mut self.state[lane];
+        if margin < 0.0 {
+            state.margin_pa = margin;
+            state.depth_m = depth;
+            return None;
+        }
+        let share = if state.margin_pa < 0.0 { -state.margin_pa / (margin - state.margin_pa) } else { 0.0 };
+        let from = if state.depth_m > 0.0 { state.depth_m } else { depth };
+        let thickness = slab.depth_factor * (from + share * (depth - from));
+        let thickness = slab.radius_m.map_or(thickness, |r| thickness.min(0.5 * r));
+        let outcome = &mut self.outcome[lane];
+        if let (0, Some(radius)) = (state.slabs, slab.radius_m) {
+            outcome.skin_over_radius = drive.skin_m.0[lane] / radius;
+        }
+        outcome.events.push(Event {
+            family: Family::Slab,
+            time_s: moment.time_s.0[lane] - (1.0 - share) * moment.step_s.0[lane],
+            depth_m: thickness,
+            surface_k: state.surface_k + share * (surface_k - state.surface_k),
+        });
+        state.slabs += 1;
+        let p = self.draws.leaves_probability;
+        let leaves = state.leaves_u < p;
+        // What is left of the uniform number is uniform again, for the next plate.
+        state.leaves_u = if leaves { state.leaves_u / p } else { (state.leaves_u - p) / (1.0 - p) };
+        state.done = !leaves || state.slabs >= self.draws.generations_max.min(SLABS_MAX);
+        state.margin_pa = 0.0;
+        state.depth_m = 0.0;
+        leaves.then_some(thickness)
+    }
+
+    fn see_split(&mut self, lane: usize, column: &Column, moment: &Moment, force_n_m: f64) {
+        let slab = self.draws.slab[lane];
+        let Some(radius) = slab.radius_m.filter(|r| *r < SPLIT_RADIUS_MAX_M) else { return };
+        let average = 2.0 * self.draws.face.heated_share.0[lane] * force_n_m / radius;
+        let core_k = column.hottest_k[column.hottest_k.len() - 1].0[lane];
+        if average >= SPLIT_FACTOR * self.strength_pa(lane, core_k) {
+            self.state[lane].split = true;
+            self.outcome[lane].events.push(Event {
+                family: Family::Split,
+                time_s: moment.time_s.0[lane],
+                depth_m: 0.5 * radius,
+                surface_k: column.temperature_k[0].0[lane],
+            });
+        }
+    }
+
+    fn see_rind(&mut self, lane: usize, column: &Column, moment: &Moment) {
+        let Some(rind) = self.draws.rind.as_ref().map(|r| r[lane]) else { return };
+        let depth = &column.grid.depth_m;
+        let mut force = 0.0;
+        let mut tension = 0.0;
+        for i in 0..depth.len() - 1 {
+            let (z0, z1) = (depth[i].0[lane], depth[i + 1].0[lane]);
+            if z0 >= rind.depth_m {
+                break;
+            }
+            let share = ((rind.depth_m - z0) / (z1 - z0)).min(1.0);
+            let (s0, s1) = (self.stress_pa[i].0[lane], self.stress_pa[i + 1].0[lane]);
+            force += (s0 + 0.5 * share * (s1 - s0)) * share * (z1 - z0);
+            let (d0, d1) = (self.tension_pa[i].0[lane], self.tension_pa[i + 1].0[lane]);
+            tension = d0 + share * (d1 - d0);
+        }
+        let face = &self.draws.face;
+        let patch = self.last.0.0[lane] * face.plan.tension_per_force(face.patch_m.0[lane], rind.depth_m);
+        let plane = rind.plane_share * self.strength_pa(lane, at_depth(column, &column.hottest_k, lane, rind.depth_m));
+        if force / rind.depth_m >= rind.buckling_pa || tension.max(patch) >= plane {
+            self.state[lane].rind_gone = true;
+            self.outcome[lane].events.push(Event {
+                family: Family::Rind,
+                time_s: moment.time_s.0[lane],
+                depth_m: rind.depth_m,
+                surface_k: column.temperature_k[0].0[lane],
+            });
+        }
+    }
+
+    /// Adds pore pressure to the drive of wet draws.
+    fn add_vapour(&mut self, column: &Column, moment: &Moment, drive: &mut Drive) {
+        let Some(wet) = &self.draws.wet else { return };
+        for (l, wet) in wet.iter().enumerate() {
+            let mut largest = drive.convex_pa.0[l];
+            for i in 1..self.tension_pa.len() {
+                let z = column.grid.depth_m[i].0[l];
+                let t = column.temperature_k[i].0[l];
+                let pressure = vapour::tension_pa(wet.porosity, z, t, moment.time_s.0[l]);
+                self.tension_pa[i].0[l] += pressure;
+                if z * self.draws.face.curvature_per_m.0[l] <= 0.25 {
+                    largest = largest.max(self.tension_pa[i].0[l]);
+                }
+            }
+            drive.convex_pa.0[l] = largest;
+            drive.largest_pa.0[l] = drive.largest_pa.0[l].max(largest);
+        }
+    }
+}
+
+/// Value of a nodal array at a depth of one lane.
+fn at_depth(column: &Column, array: &[Lanes], lane: usize, depth_m: f64) -> f64 {
+    let depth = &column.grid.depth_m;
+    for i in 1..depth.len() {
+        let (z0, z1) = (depth[i - 1].0[lane], depth[i].0[lane]);
+        if z1 >= depth_m {
+            let share = ((depth_m - z0) / (z1 - z0)).clamp(0.0, 1.0);
+            return array[i - 1].0[lane] + share * (array[i].0[lane] - array[i - 1].0[lane]);
+        }
+    }
+    array[array.len() - 1].0[lane]
+}
+
+impl Observer for Watch<'_> {
+    #[inline(always)]
+    fn see(&mut self, column: &mut Column, moment: &Moment) -> Verdict {
+        let depth_m = &column.grid.depth_m;
+        let largest =
+            self.draws.skin_law.stress(&self.draws.skin, &column.temperature_k, &column.hottest_k, &mut self.stress_pa);
+        let force = membrane_force_n_m(depth_m, &self.stress_pa);
+        let mut drive = self.draws.face.drive(depth_m, &self.stress_pa, force, &mut self.tension_pa);
+        self.add_vapour(column, moment, &mut drive);
+        self.last = (force, drive);
+        let (risk, flake_depth) = flake::risk(&self.draws.flake, depth_m, &self.stress_pa, largest);
+        let mut stripped = false;
+        let mut enough = true;
+        for l in 0..LANES {
+            let surface_k = column.temperature_k[0].0[l];
+            let outcome = &mut self.outcome[l];
+            outcome.peak_surface_k = outcome.peak_surface_k.max(surface_k);
+            outcome.peak_flux_w_m2 = outcome.peak_flux_w_m2.max(moment.flux_w_m2.0[l]);
+            outcome.absorbed_j_m2 = outcome.absorbed_j_m2.max(moment.absorbed_j_m2.0[l]);
+            outcome.peak_stress_pa = outcome.peak_stress_pa.max(largest.0[l]);
+            if self.state[l].slabs == 0 {
+                outcome.peak_tension_pa = outcome.peak_tension_pa.max(drive.largest_pa.0[l]);
+            }
+            self.see_flake(l, moment, risk.0[l], flake_depth.0[l], self.stress_pa[0].0[l], surface_k);
+            if !self.state[l].rind_gone && !self.state[l].done {
+                self.see_rind(l, column, moment);
+            }
+            if !self.state[l].split && !self.state[l].done {
+                self.see_split(l, column, moment, force.0[l]);
+            }
+            if !self.state[l].done
+                && let Some(thickness) = self.see_slab(l, column, moment, &drive)
+            {
+                self.close_flake(l, moment.time_s.0[l]);
+                column.strip(self.material, l, thickness);
+                stripped = true;
+            }
+            let state = &mut self.state[l];
+            state.surface_k = column.temperature_k[0].0[l];
+            state.peak_drive_pa = state.peak_drive_pa.max(drive.largest_pa.0[l]);
+            let over = surface_k < COLD_FACE_K && drive.largest_pa.0[l] < PAST_PEAK * state.peak_drive_pa;
+            enough &= over || (state.done && !state.flake_open);
+        }
+        if enough && !stripped { Verdict::Enough } else { Verdict::Continue }
+    }
+
+    fn finish(&mut self, moment: &Moment) {
+        for l in 0..LANES {
+            self.close_flake(l, moment.time_s.0[l]);
+        }
+    }
+}
