@@ -1,1 +1,2 @@
+//! The program: parse, plan, run, exit.
 fn main() {}

@@ -23,7 +23,11 @@ fn every_word_of_a_record_is_in_the_glossary() {
         .chain(Weathering::ALL.iter().map(|w| w.word()))
         .collect();
     assert_eq!(words.len(), 8 + 5 + 3 + 2 + 3 + 5 + 4, "a word was added or removed; the glossary must follow");
-    assert_eq!(lacking("`grass`", words.iter().copied()).len(), words.len() - 1, "the check itself finds what is missing");
+    assert_eq!(
+        lacking("`grass`", words.iter().copied()).len(),
+        words.len() - 1,
+        "the check itself finds what is missing"
+    );
     assert_eq!(lacking(PAGE, words), Vec::<&str>::new(), "missing from docs/architecture.md");
 }
 

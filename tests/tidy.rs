@@ -24,7 +24,7 @@ const MAY_IMPORT: [(&str, &str); 21] = [
     ("flag", ""),
     ("diagnostic", ""),
     ("site", "fire rock bounds units"),
-    ("settings", "ensemble rock bounds units"),
+    ("settings", "ensemble rock fire rockfall bounds units"),
     ("rock", "ensemble numerics bounds units settings site diagnostic"),
     ("heat", "rock numerics ensemble bounds units"),
     ("stress", "heat rock numerics ensemble bounds units"),
