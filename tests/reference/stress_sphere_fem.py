@@ -14,9 +14,9 @@ Half-space patch: cylinder (disc) or plane strain (strip) of 40 half-widths, ski
 Tables:
 - sphere_profile.csv: radially symmetric temperature, s_r and s_t against the closed forms (Timoshenko & Goodier, recalled);
 - cap_factor.csv: largest tension under the cap centre within a quarter radius, against closed form x c,
-  c = 1 - .34 (1-f)(1 - exp(-(d/R)/.037)), alone, as the larger of it and the disc patch term .558 N/a (a = 2 sqrt(f), equal area),
-  and their sum; depth where the tension first reaches .9 of its maximum;
+  c = 1 - .34 (1-f)(1 - exp(-(d/R)/.037)), alone and combined with a disc patch term; depth where the tension first reaches .9 of its maximum;
 - patch.csv: disc and strip maxima against the point-solution forms, and those forms against quadrature of the point solutions.
+Rows beyond the grid vary Poisson's ratio and the width of the cap's edge.
 """
 
 import numpy as np
@@ -34,6 +34,7 @@ CENTRES_D = [0.01, 0.02, 0.05, 0.10, 0.14]
 SHARES = [0.02, 0.05, 0.10, 0.15, 0.30, 0.60, 1.0]
 QUARTER = 0.25
 REFINED = {(0.01, 0.15, "exponential"), (0.05, 0.02, "exponential"), (0.05, 0.6, "exponential"), (0.14, 0.15, "erfc")}
+VARIANTS = [(0.05, 0.3, 0.15, 1.0), (0.05, 0.3, 0.33, 1.0), (0.05, 0.15, NU, 0.5), (0.05, 0.15, NU, 2.0), (0.02, 0.05, NU, 2.0)]  # d, f, nu, edge/d
 DISC_MAX = 3 * (2 / 3) / (5 / 3) ** 2.5  # of N/a, at z = a sqrt(2/3)
 
 
@@ -178,45 +179,49 @@ def profiles():
     return max(r[-1] for r in rows)
 
 
+def closed_peak(kind, d):
+    lattice = np.geomspace(1e-3, QUARTER, 60)
+    p = profile(kind, d)
+    return peak(lattice, np.array([closed_sphere(p, v)[0] for v in lattice]), QUARTER)
+
+
+def fem_peak(body, kind, d, theta_c, edge_width):
+    p = profile(kind, d)
+    w = (lambda t: edge(t, theta_c, edge_width)) if theta_c < np.pi else (lambda t: np.ones_like(t))
+    x, s = body.stresses(lambda r, t: p(1.0 - r) * w(t))
+    return peak(*along_axis(x, s[0], lambda x: (x[1], 1.0 - x[0])), QUARTER)
+
+
 def caps():
     rows, refined = [], 0.0
-    for d in CENTRES_D:
-        for f in SHARES:
-            theta_c = float(np.arccos(1.0 - 2.0 * f))
-            body = sphere(d, theta_c)
-            for kind in ("exponential", "erfc"):
-                p = profile(kind, d)
-                w = (lambda t: edge(t, theta_c, d)) if f < 1 else (lambda t: np.ones_like(t))
-                heat = lambda r, t: p(1.0 - r) * w(t)
-                x, s = body.stresses(heat)
-                depth, tension = along_axis(x, s[0], lambda x: (x[1], 1.0 - x[0]))
-                largest, at, at90 = peak(depth, tension, QUARTER)
-                change = None
-                if (d, f, kind) in REFINED:
-                    x2, s2 = sphere(d, theta_c, 2).stresses(heat)
-                    change = peak(*along_axis(x2, s2[0], lambda x: (x[1], 1.0 - x[0])), QUARTER)[0] / largest - 1.0
-                    refined = max(refined, abs(change))
-                lattice = np.geomspace(1e-3, QUARTER, 60)
-                exact = np.array([closed_sphere(p, v)[0] for v in lattice]) if f == SHARES[0] else exact_of[kind]
-                exact_of[kind] = exact
-                top, _, top90 = peak(lattice, exact, QUARTER)
-                factor = 1.0 - 0.34 * (1.0 - f) * (1.0 - np.exp(-d / 0.037))
-                patch, thick = patch_terms("disc", kind, d, 2.0 * np.sqrt(f)) if f < 1 else (0.0, 0.0)
-                rows.append((kind, d, f, NU, d if f < 1 else None, largest, at, at90, top, top90, largest / top, factor, top * factor,
-                             100 * (top * factor / largest - 1), patch, 100 * (max(top * factor, patch) / largest - 1),
-                             100 * ((top * factor + patch) / largest - 1), thick,
-                             100 * (np.hypot(top * factor, thick) / largest - 1), None if change is None else 100 * change))
+    closed = {(kind, d): closed_peak(kind, d) for kind in ("exponential", "erfc") for d in CENTRES_D}
+    listed = [(d, f, NU, 1.0) for d in CENTRES_D for f in SHARES] + VARIANTS
+    for d, f, nu, edge_in_d in listed:
+        theta_c = float(np.arccos(1.0 - 2.0 * f))
+        body = sphere(d, theta_c, 1, nu)
+        for kind in ("exponential", "erfc"):
+            largest, at, at90 = fem_peak(body, kind, d, theta_c, edge_in_d * d)
+            change = None
+            if (d, f, kind) in REFINED and (nu, edge_in_d) == (NU, 1.0):
+                change = fem_peak(sphere(d, theta_c, 2, nu), kind, d, theta_c, d)[0] / largest - 1.0
+                refined = max(refined, abs(change))
+            top, _, top90 = closed[kind, d]
+            factor = 1.0 - 0.34 * (1.0 - f) * (1.0 - np.exp(-d / 0.037))
+            thin, thick = patch_terms("disc", kind, d, 2.0 * np.sqrt(f)) if f < 1 else (0.0, 0.0)
+            off = lambda value: 100 * (value / largest - 1)
+            rows.append((kind, d, f, nu, edge_in_d * d if f < 1 else None, largest, at if f < 1 else None, at90, top, top90, largest / top, factor,
+                         top * factor, off(top * factor), thin, off(max(top * factor, thin)), off(top * factor + thin), thick,
+                         off(max(top * factor, thick)), off(np.hypot(top * factor, thick)), None if change is None else 100 * change))
     write_table("cap_factor.csv",
                 "Unit sphere heated on a cap of share f, skin thickness d = N/s(0); stresses in alpha E dT/(1-nu) of the cap centre, within a quarter radius.\n"
-                "deviation_*_pct: proposed value over finite elements minus one. refined_change_pct: finite elements on half the spacing.",
+                "deviation_*_pct: proposed value over finite elements minus one. Patch terms: disc of equal area (a = 2 sqrt f), all force at the face (thin)\n"
+                "or at its own depth (thick, see patch.csv). error_refined_change_pct: finite elements on half the spacing.",
                 ["numpy", "scipy", "scikit-fem"],
                 ["profile", "d_over_radius", "heated_share", "poisson", "edge_half_width_over_radius", "fem_max", "fem_max_depth", "fem_depth_90pct",
-                 "closed_max", "closed_depth_90pct", "fem_over_closed", "factor_c", "closed_times_c", "deviation_c_pct", "disc_patch_term",
-                 "deviation_larger_pct", "deviation_sum_pct", "disc_patch_term_thick_skin", "deviation_root_sum_squares_pct", "error_refined_change_pct"], rows)
+                 "closed_max", "closed_depth_90pct", "fem_over_closed", "factor_c", "closed_times_c", "deviation_c_pct", "disc_thin",
+                 "deviation_larger_thin_pct", "deviation_sum_thin_pct", "disc_thick", "deviation_larger_thick_pct", "deviation_root_sum_squares_thick_pct",
+                 "error_refined_change_pct"], rows)
     return rows, refined
-
-
-exact_of = {}
 
 
 def thick_kernel(shape, z, c):
@@ -280,12 +285,14 @@ def main():
     rows, refined = caps()
     print("caps, largest change by refining", refined)
     for kind in ("exponential", "erfc"):
-        print(kind, "closed x c over finite elements, % (columns f", SHARES, ")")
-        for d in CENTRES_D:
-            print(f"  d/R {d:5.2f}", *(f"{r[13]:7.1f}" for r in rows if r[0] == kind and r[1] == d), "  larger:",
-                  *(f"{r[15]:6.1f}" for r in rows if r[0] == kind and r[1] == d), "  sum:", *(f"{r[16]:6.1f}" for r in rows if r[0] == kind and r[1] == d), "  rss:", *(f"{r[18]:6.1f}" for r in rows if r[0] == kind and r[1] == d))
+        for title, column in (("c", 13), ("larger of c and thin disc", 15), ("larger of c and thick disc", 18), ("root sum of squares, thick", 19)):
+            print(f"{kind}, {title}: % over finite elements, columns f {SHARES}")
+            for d in CENTRES_D:
+                print(f"  d/R {d:5.2f}", *(f"{r[column]:7.1f}" for r in rows if r[:2] == (kind, d) and r[3] == NU and r[4] in (d, None)))
+    for r in rows[2 * len(CENTRES_D) * len(SHARES):]:
+        print("variant", *(f"{v:.3f}" if isinstance(v, float) else v for v in r[:16]))
     for r in patches():
-        print(r)
+        print(*(f"{v:.4f}" if isinstance(v, float) else v for v in r if v is not None))
     assert worst < 2e-3 and refined < 0.01
 
 
