@@ -20,6 +20,7 @@ pub mod ensemble;
 pub mod fire;
 pub mod flag;
 pub mod heat;
+pub mod input;
 pub mod numerics;
 pub mod rock;
 pub mod rockfall;

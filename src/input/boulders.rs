@@ -1,0 +1,482 @@
+//! Features and rows to boulders, one at a time.
+//!
+//! Each record of the file becomes one [`BoulderFeature`]: its geometry and properties as they came, and either the
+//! boulder in SI or the finding that refuses it. Memory is one record, plus 16 bytes a record where repeated names are
+//! watched for while streaming.
+//!
+//! Size: the radius of the sphere of equal volume, R = (a b c)^(1/3) / 2 of the full axes, or half the diameter. Axes win
+//! over a diameter; a difference above 30 % is a warning.
+
+use std::borrow::Cow;
+use std::collections::HashMap;
+use std::collections::hash_map::{DefaultHasher, Entry};
+use std::hash::{Hash, Hasher};
+use std::io::Read;
+use std::ops::ControlFlow;
+use std::path::Path;
+
+use ::geojson::{Geometry, GeometryValue, Position as RawPosition};
+use serde_json::value::RawValue;
+
+use super::columns::Columns;
+use super::geojson::{RawFeature, layout, parts, read_features};
+use super::geometry::{self, Flaw};
+use super::text::Text;
+use super::values::{Record, show};
+use super::{InputError, InputFile, Properties, foreign_bytes, nothing_inside, open, reading_error};
+use crate::diagnostic::{Diagnostic, Severity};
+use crate::fire::exposure::ExposureClass;
+use crate::rock::{Catalogue, Property, Resolution};
+use crate::site::{
+    Boulder, Contact, HeatingRecord, Kind, Moisture, Position, RockChoice, StandingRecord, Support, Weathering,
+};
+use crate::units::{M2_S_PER_MM2_S, MM_PER_M, SECONDS_PER_MINUTE};
+
+/// Columns of a boulder besides the catalogue's properties.
+const COLUMNS: [&str; 30] = [
+    "boulder_id",
+    "rock",
+    "diameter_m",
+    "axis_a_m",
+    "axis_b_m",
+    "axis_c_m",
+    "kind",
+    "diffusivity_mm2_s",
+    "diffusivity_gsd",
+    "residence_min",
+    "exposure",
+    "heated_fraction",
+    "standoff_m",
+    "log_diameter_m",
+    "weathering",
+    "rind_mm",
+    "moisture",
+    "slope_deg",
+    "downslope_azimuth_deg",
+    "contact",
+    "seat_depth_m",
+    "centroid_setback_m",
+    "centroid_height_m",
+    "support",
+    "base_scar_mm",
+    "elevation_m",
+    "elevation_sd_m",
+    "observed_on",
+    "longitude",
+    "latitude",
+];
+/// Columns a table cannot do without.
+const PLACE: [&str; 2] = ["longitude", "latitude"];
+/// Difference between diameter and axes from which it is worth a warning: neither a tape nor an eye is that far off.
+const SIZE_DISAGREEMENT: f64 = 0.3;
+/// What a boulder's geometry may be.
+const WANTED: &str = "a Point or a Polygon footprint";
+/// Standard remedy for an optional value.
+const OR_EMPTY: &str = "correct it, or leave it empty when it was not recorded";
+
+/// One record of the inventory.
+#[derive(Debug, Clone)]
+pub struct BoulderFeature {
+    /// Its place in the file, from 0.
+    pub index: usize,
+    /// Its name as found, also for refused records.
+    pub id: Option<String>,
+    /// Its geometry as it came, with heights; `None` where there is none that a map could show.
+    pub geometry: Option<Geometry>,
+    /// Its properties as they came.
+    pub properties: Properties,
+    /// The feature's own `id` member, as written.
+    pub feature_id: Option<Box<RawValue>>,
+    /// The boulder, or why it is not assessed.
+    pub boulder: Result<Boulder, Diagnostic>,
+    /// What else was found.
+    pub remarks: Vec<Diagnostic>,
+}
+
+/// What to do about repeated names.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Duplicates {
+    /// Refuse the second and later records of a name as they come: for streams.
+    RefuseLater,
+    /// Leave it to [`refuse_duplicates`], which refuses all of them, so that the order of the file does not matter.
+    LeaveToCaller,
+}
+
+/// What was read.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Summary {
+    /// The file as the run record names it.
+    pub file: InputFile,
+    /// Records handed on.
+    pub records: usize,
+    /// Findings about the file as a whole.
+    pub findings: Vec<Diagnostic>,
+}
+
+/// Reads a boulder file, GeoJSON or CSV by its content, handing each record to `sink`.
+///
+/// # Errors
+/// When the file cannot be used at all; records before the damage have been handed on by then.
+pub fn read_boulders(
+    path: &Path,
+    catalogue: &Catalogue,
+    duplicates: Duplicates,
+    sink: impl FnMut(BoulderFeature) -> ControlFlow<()>,
+) -> Result<Summary, InputError> {
+    let (text, name) = open(path)?;
+    read(&text, &name, catalogue, duplicates, sink)
+}
+
+/// Reads boulders from an open source such as standard input; `name` is how messages call it.
+///
+/// # Errors
+/// As [`read_boulders`]. An empty source is no error: it is an empty inventory.
+pub fn read_boulders_from(
+    source: impl Read + 'static,
+    name: &str,
+    catalogue: &Catalogue,
+    duplicates: Duplicates,
+    sink: impl FnMut(BoulderFeature) -> ControlFlow<()>,
+) -> Result<Summary, InputError> {
+    read(&Text::new(source), name, catalogue, duplicates, sink)
+}
+
+fn read(
+    text: &Text,
+    name: &str,
+    catalogue: &Catalogue,
+    duplicates: Duplicates,
+    mut sink: impl FnMut(BoulderFeature) -> ControlFlow<()>,
+) -> Result<Summary, InputError> {
+    let head = text.head().map_err(|e| reading_error(name, &e))?;
+    let mut known: Vec<&'static str> = COLUMNS.to_vec();
+    known.extend(Property::ALL.iter().map(|p| p.input_name()));
+    let mut reader = Reader { name, catalogue, columns: Columns::new("boulder", known.clone()) };
+    let mut findings = Vec::new();
+    let mut seen: HashMap<u128, u64> = HashMap::new();
+    let mut hand_on = |mut feature: BoulderFeature, line: u64| {
+        if duplicates == Duplicates::RefuseLater
+            && let Some(id) = feature.id.clone()
+        {
+            match seen.entry(hash(&id)) {
+                Entry::Vacant(free) => {
+                    free.insert(line);
+                }
+                Entry::Occupied(first) => {
+                    let found = format!("the name was used before, in line {}", first.get());
+                    refuse(&mut feature, repeated(name, &id, &found).at_line(Some(line)));
+                }
+            }
+        }
+        sink(feature)
+    };
+    let blank = head.iter().all(u8::is_ascii_whitespace);
+    let records = if blank && name == super::STANDARD_INPUT {
+        0
+    } else if let Some(layout) = layout(name, &head) {
+        read_features(text, name, layout, &mut |raw| {
+            let line = raw.line;
+            hand_on(reader.feature(&raw), line)
+        })?
+    } else {
+        let table = super::csv::read_rows(text, name, &PLACE, &known, &mut |row| {
+            let line = row.line;
+            hand_on(reader.row(row), line)
+        })?;
+        findings.extend(table.findings);
+        table.rows
+    };
+    let file = text.finish(name).map_err(|e| reading_error(name, &e))?;
+    findings.extend(foreign_bytes(name, text));
+    findings.extend(reader.columns.findings);
+    if records == 0 {
+        findings.push(nothing_inside(name, "boulder"));
+    }
+    Ok(Summary { file, records, findings })
+}
+
+/// Refuses every record whose name occurs more than once.
+pub fn refuse_duplicates(features: &mut [BoulderFeature], file: &str) {
+    let mut counts: HashMap<String, usize> = HashMap::new();
+    for id in features.iter().filter_map(|f| f.id.as_ref()) {
+        *counts.entry(id.clone()).or_default() += 1;
+    }
+    for feature in features {
+        if let Some((id, n)) = feature.id.as_ref().and_then(|id| counts.get(id).map(|n| (id, *n)))
+            && n > 1
+        {
+            let finding = repeated(file, id, &format!("the name is used by {n} records"));
+            refuse(feature, finding);
+        }
+    }
+}
+
+fn repeated(file: &str, id: &str, found: &str) -> Diagnostic {
+    Diagnostic::new(Severity::Refusal, "duplicate_id", file)
+        .about("boulder", Some(id))
+        .found(found)
+        .expected("a name of its own for each boulder")
+        .remedy("rename or remove the copies; none is preferred by guessing")
+}
+
+/// Makes `finding` the reason of a feature; a reason that was there before becomes a remark.
+fn refuse(feature: &mut BoulderFeature, finding: Diagnostic) {
+    if let Err(before) = std::mem::replace(&mut feature.boulder, Err(finding)) {
+        feature.remarks.push(before);
+    }
+}
+
+/// A hash wide enough that two names of a million do not meet.
+fn hash(id: &str) -> u128 {
+    let half = |salt: u8| {
+        let mut hasher = DefaultHasher::new();
+        (salt, id).hash(&mut hasher);
+        u128::from(hasher.finish())
+    };
+    (half(1) << 64) | half(2)
+}
+
+struct Reader<'r> {
+    name: &'r str,
+    catalogue: &'r Catalogue,
+    columns: Columns,
+}
+
+impl Reader<'_> {
+    fn feature(&mut self, raw: &RawFeature<'_>) -> BoulderFeature {
+        let mut feature = BoulderFeature {
+            index: raw.index,
+            id: None,
+            geometry: None,
+            properties: Properties::default(),
+            feature_id: None,
+            boulder: Err(Diagnostic::new(Severity::Refusal, "not_read", self.name)),
+            remarks: Vec::new(),
+        };
+        let parts = match parts(raw, self.name, "boulder") {
+            Ok(parts) => parts,
+            Err(refusal) => {
+                feature.boulder = Err(refusal);
+                return feature;
+            }
+        };
+        feature.properties = Properties::from_pairs(parts.properties.iter().map(|(n, v)| (n.as_ref(), v.get())));
+        feature.feature_id = parts.id.map(ToOwned::to_owned);
+        let geometry = geometry::parse(parts.geometry, WANTED);
+        let mut record = Record::new(self.name, "boulder", raw.line, &mut self.columns, &parts.properties);
+        feature.id = record.identify("boulder_id", parts.id);
+        let place = match &geometry {
+            Ok(value) => geometry::standpoint(value, WANTED),
+            Err(flaw) => Err(flaw.clone()),
+        };
+        feature.geometry = geometry.ok().map(|value| Geometry { bbox: None, value, foreign_members: None });
+        self.finish(&mut feature, record, place);
+        feature
+    }
+
+    fn row(&mut self, row: super::csv::Row) -> BoulderFeature {
+        let cells: Vec<(Cow<'_, str>, Box<RawValue>)> = row
+            .cells
+            .iter()
+            .map(|(n, json)| {
+                (Cow::Borrowed(n.as_str()), RawValue::from_string(json.clone()).expect("a cell becomes valid JSON"))
+            })
+            .collect();
+        let borrowed: Vec<(Cow<'_, str>, &RawValue)> = cells.iter().map(|(n, v)| (n.clone(), &**v)).collect();
+        let mut record = Record::new(self.name, "boulder", row.line, &mut self.columns, &borrowed);
+        let mut feature = BoulderFeature {
+            index: row.index,
+            id: record.identify("boulder_id", None),
+            geometry: None,
+            properties: Properties::from_pairs(row.cells.iter().map(|(n, v)| (n.as_str(), v.as_str()))),
+            feature_id: None,
+            boulder: Err(Diagnostic::new(Severity::Refusal, "not_read", self.name)),
+            remarks: Vec::new(),
+        };
+        if let Some((found, remedy)) = row.ragged {
+            let finding = record
+                .finding(Severity::Refusal, "row_ragged")
+                .found(found)
+                .expected(format!("{} as in the header", row.cells.len()))
+                .remedy(remedy);
+            // Cells may have moved: nothing else of the row is believed.
+            feature.boulder = Err(finding);
+            return feature;
+        }
+        let remedy = "write decimal degrees in WGS 84";
+        let place = match (record.coordinate("longitude", remedy), record.coordinate("latitude", remedy)) {
+            (Some(lon_deg), Some(lat_deg)) => {
+                geometry::place_on_earth(lon_deg, lat_deg).map(|()| Position { lon_deg, lat_deg, height_m: None })
+            }
+            _ => Err(Flaw {
+                code: "geometry_missing",
+                found: "longitude or latitude is missing or unreadable".to_owned(),
+                expected: "both, in degrees".to_owned(),
+                remedy: "add them or remove the row".to_owned(),
+            }),
+        };
+        if let Ok(place) = &place {
+            let mut numbers = vec![place.lon_deg, place.lat_deg];
+            numbers.extend(record.peek("elevation_m"));
+            let value = GeometryValue::Point { coordinates: RawPosition::from(numbers) };
+            feature.geometry = Some(Geometry { bbox: None, value, foreign_members: None });
+        }
+        self.finish(&mut feature, record, place);
+        feature
+    }
+
+    /// Reads the rest of the record and settles the feature's fate.
+    fn finish(&mut self, feature: &mut BoulderFeature, mut record: Record<'_>, place: Result<Position, Flaw>) {
+        let position = match place {
+            Ok(position) => Some(position),
+            Err(flaw) => {
+                let finding = record
+                    .finding(Severity::Refusal, flaw.code)
+                    .found(flaw.found)
+                    .expected(flaw.expected)
+                    .remedy(flaw.remedy);
+                // The cause of an unreadable coordinate is already there when a cell could not be read.
+                if flaw.code != "geometry_missing" || record.refusals.is_empty() || feature.id.is_none() {
+                    record.refusals.push(finding);
+                }
+                None
+            }
+        };
+        let rock = self.rock(&mut record);
+        let rock_name = match &rock {
+            Some(RockChoice::Named(key)) => key.clone(),
+            _ => "the rock".to_owned(),
+        };
+        let kind = record.word("kind", Kind::parse, Kind::ALL, Kind::word).unwrap_or(Kind::Boulder);
+        let (radius_m, axes_m) = size(&mut record, kind);
+        let heating = heating(&mut record, &rock_name);
+        let standing = standing(&mut record);
+        let elevation_m = record.number("elevation_m", "give metres above sea level, or leave it empty");
+        let mut refusals = std::mem::take(&mut record.refusals).into_iter();
+        feature.remarks = std::mem::take(&mut record.remarks);
+        feature.boulder = match (refusals.next(), feature.id.clone(), position, rock) {
+            (None, Some(id), Some(mut position), Some(rock)) => {
+                position.height_m = elevation_m.or(position.height_m);
+                Ok(Boulder { id, position, rock, kind, radius_m, axes_m, heating, standing })
+            }
+            (Some(first), ..) => Err(first),
+            (None, ..) => unreachable!("a record without name, place or rock has been refused"),
+        };
+        feature.remarks.extend(refusals);
+    }
+}
+
+impl Reader<'_> {
+    /// The rock of a record; `None` when its name is not known, which refuses the record.
+    fn rock(&self, record: &mut Record<'_>) -> Option<RockChoice> {
+        let Some(text) = record.text("rock") else { return Some(RockChoice::Mixture) };
+        match self.catalogue.resolve(&text) {
+            Resolution::Rock(key) => Some(RockChoice::Named(key)),
+            Resolution::Unknown => Some(RockChoice::Mixture),
+            Resolution::NotFound { nearest } => {
+                let remedy = "write \"unknown\" when it was not recorded, or add the rock to the settings file";
+                let expected = match nearest.len() {
+                    0 => "a catalogue rock or alias (the command `rocks` lists them)".to_owned(),
+                    _ => format!("a catalogue rock or alias, for example {}", nearest.join(", ")),
+                };
+                record.refuse("rock_unknown", "rock", &format!("{:?}", show(&text)), &expected, remedy);
+                None
+            }
+        }
+    }
+}
+
+/// Radius of the sphere of equal volume and the axes, longest first.
+fn size(record: &mut Record<'_>, kind: Kind) -> (Option<f64>, Option<[f64; 3]>) {
+    let remedy = "measure it again, or leave it empty and give the other size";
+    let diameter = record.number("diameter_m", remedy);
+    let axes = ["axis_a_m", "axis_b_m", "axis_c_m"].map(|name| record.number(name, remedy));
+    let given = axes.iter().flatten().count();
+    let before = record.refusals.len();
+    if let [Some(a), Some(b), Some(c)] = axes {
+        let mut sorted = [a, b, c];
+        sorted.sort_by(|x, y| y.total_cmp(x));
+        if sorted != [a, b, c] {
+            record.note(
+                "axes_sorted",
+                "axis_a_m, axis_b_m, axis_c_m",
+                &format!("{a}, {b}, {c}"),
+                "longest first",
+                "they were sorted",
+            );
+        }
+        let of_axes = libm::cbrt(a * b * c);
+        if let Some(d) = diameter.filter(|d| (d / of_axes).max(of_axes / d) > 1.0 + SIZE_DISAGREEMENT) {
+            record.warn(
+                "sizes_disagree",
+                "diameter_m",
+                &format!("{d}"),
+                &format!("about {of_axes:.2} from the three axes"),
+                "check both; the axes were used",
+            );
+        }
+        return (Some(of_axes / 2.0), Some(sorted));
+    }
+    if given > 0 && diameter.is_some() {
+        record.warn(
+            "axes_incomplete",
+            "axis_a_m, axis_b_m, axis_c_m",
+            &format!("given {given} of 3 times"),
+            "all three or none",
+            "the diameter was used",
+        );
+    }
+    if diameter.is_none() && kind == Kind::Boulder && before == record.refusals.len() {
+        let found = match given {
+            0 => "there is no size".to_owned(),
+            n => format!("only {n} of three axes are given"),
+        };
+        let finding = record
+            .finding(Severity::Refusal, "size_missing")
+            .found(found)
+            .expected("diameter_m, or axis_a_m, axis_b_m and axis_c_m")
+            .remedy("measure it; only an outcrop may be recorded without a size");
+        record.refusals.push(finding);
+    }
+    (diameter.map(|d| d / 2.0), None)
+}
+
+fn heating(record: &mut Record<'_>, rock: &str) -> HeatingRecord {
+    let catalogue = format!("remove it to use the catalogue value for {rock}");
+    let exposure = "correct it, or remove it to use the burn's";
+    let diffusivity = record.number("diffusivity_mm2_s", &catalogue).map(|x| x * M2_S_PER_MM2_S);
+    HeatingRecord {
+        diffusivity_m2_s: diffusivity,
+        diffusivity_gsd: record.number("diffusivity_gsd", &catalogue),
+        residence_s: record.number("residence_min", exposure).map(|x| x * SECONDS_PER_MINUTE),
+        exposure: record.word("exposure", ExposureClass::parse, ExposureClass::ALL, ExposureClass::word),
+        heated_fraction: record
+            .number("heated_fraction", "give the share of the surface from 0 to 1, or leave it empty"),
+        standoff_m: record.number("standoff_m", OR_EMPTY),
+        log_diameter_m: record.number("log_diameter_m", OR_EMPTY),
+        weathering: record.word("weathering", Weathering::parse, Weathering::ALL, Weathering::word),
+        rind_m: record.number("rind_mm", OR_EMPTY).map(|x| x / MM_PER_M),
+        moisture: record.word("moisture", Moisture::parse, Moisture::ALL, Moisture::word),
+        properties: Property::ALL
+            .into_iter()
+            .filter(|p| *p != Property::Diffusivity)
+            .filter_map(|p| record.number(p.input_name(), &catalogue).map(|x| (p, x * p.si_per_input())))
+            .collect(),
+    }
+}
+
+fn standing(record: &mut Record<'_>) -> StandingRecord {
+    let azimuth = "give degrees from true north, 0 to 360, or leave it empty";
+    StandingRecord {
+        slope_deg: record.number("slope_deg", "give degrees along the fall line, not per cent, or leave it empty"),
+        downslope_azimuth_deg: record.number("downslope_azimuth_deg", azimuth),
+        contact: record.word("contact", Contact::parse, Contact::ALL, Contact::word),
+        seat_depth_m: record.number("seat_depth_m", OR_EMPTY),
+        centroid_setback_m: record.number("centroid_setback_m", OR_EMPTY),
+        centroid_height_m: record.number("centroid_height_m", OR_EMPTY),
+        support: record.word("support", Support::parse, Support::ALL, Support::word),
+        base_scar_m: record.number("base_scar_mm", OR_EMPTY).map(|x| x / MM_PER_M),
+        elevation_sd_m: record.number("elevation_sd_m", OR_EMPTY),
+        observed_on: record.date("observed_on"),
+    }
+}
