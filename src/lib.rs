@@ -22,6 +22,7 @@ pub mod flag;
 pub mod heat;
 pub mod input;
 pub mod numerics;
+pub mod output;
 pub mod rock;
 pub mod rockfall;
 pub mod settings;

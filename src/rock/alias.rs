@@ -256,19 +256,23 @@ impl Names {
         let joined = words.iter().any(|w| JOINING.contains(&w.as_str()));
         match (last, mentioned.as_slice()) {
             (Some(key), [only]) if only == key && !joined => Resolution::Rock(key.to_owned()),
-            (_, []) => Resolution::NotFound { nearest: self.near(&words.concat()) },
+            (_, []) => Resolution::NotFound { nearest: self.near(words) },
             _ => Resolution::NotFound { nearest: mentioned },
         }
     }
 
-    /// Names close to a folded text, best first.
-    fn near(&self, folded: &str) -> Vec<String> {
+    /// Names close to the words, run together or one by one, best first.
+    fn near(&self, words: &[String]) -> Vec<String> {
+        let mut wanted = vec![words.concat()];
+        wanted.extend(words.iter().filter(|w| w.len() >= SUGGESTED_FROM).cloned());
+        let closeness =
+            |folded: &str| wanted.iter().map(|w| strsim::normalized_damerau_levenshtein(folded, w)).fold(0.0, f64::max);
         let keys = self.rocks.iter().map(|(f, key)| (f, key.as_str()));
         let aliases = self.index.iter().map(|(f, &at)| (f, self.aliases[at].alias.as_str()));
         let mut scored: Vec<(f64, &str)> = keys
             .chain(aliases)
-            .filter(|(f, _)| f.len() >= SUGGESTED_FROM)
-            .map(|(f, name)| (strsim::normalized_damerau_levenshtein(f, folded), name))
+            .filter(|(folded, _)| folded.len() >= SUGGESTED_FROM)
+            .map(|(folded, name)| (closeness(folded), name))
             .filter(|(score, _)| *score >= SIMILAR)
             .collect();
         scored.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(b.1)));

@@ -1,0 +1,2 @@
+//! Numbers to layers, tables and records.
+pub mod rock_table;
