@@ -1,2 +1,4 @@
-//! The ensemble: distributions, the point set, summaries. Knows no physics.
+//! The ensemble: distributions, the point set. Knows no physics.
+
 pub mod distribution;
+pub mod points;

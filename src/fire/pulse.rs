@@ -5,8 +5,8 @@
 //!
 //! Symbols: G plateau irradiance W/m2, Ta ambient K, Tg gas temperature K, tg growth time s, t_r residence s, tau decay
 //! time s. g multiplies (G - sigma Ta^4) and (Tg - Ta), never a flame temperature. Where the residence exceeds the
-//! flaming cap of its class the excess is a residual stage at its own level. After the fire the convective coefficient is
-//! that of still air. Sources: physics and fire pages; shape and decay are judgement.
+//! flaming cap of its class the excess is a residual stage at its own level. The class's convective coefficient lasts
+//! through the decay and then gives way to that of still air. Sources: physics and fire pages; shape and decay are judgement.
 
 use crate::heat::boundary::{Exchange, Leg, Spacing, SurfaceForcing};
 use crate::numerics::lanes::{LANES, Lanes};
@@ -14,6 +14,9 @@ use crate::units::STEFAN_BOLTZMANN_W_M2_K4;
 
 /// Convective coefficient once the fire is over, W/m2K (judgement).
 pub const H_AFTER_W_M2_K: f64 = 12.0;
+/// The fire's own convection lasts while g is above this, then fades into still air (assumption; keeping it through the
+/// decay is what the check values of the class medians were made with).
+const EMBERS: f64 = 0.05;
 /// Growth where neither flame length nor spread rate is known: this share of the residence, at most this long (judgement).
 pub const GROWTH_SHARE: f64 = 0.25;
 /// See [`GROWTH_SHARE`], s.
@@ -137,7 +140,8 @@ impl SurfaceForcing for Pulse {
             _ => {
                 let level = self.last_level();
                 let g = ((self.residence_s - t_s) / self.decay_s).map(libm::exp);
-                (g, level, Lanes::splat(H_AFTER_W_M2_K))
+                let fire = (g * (1.0 / EMBERS)).min(Lanes::ONE);
+                (g, level, Lanes::splat(H_AFTER_W_M2_K) + fire * (level.h_w_m2_k - Lanes::splat(H_AFTER_W_M2_K)))
             }
         };
         let g = g * live;

@@ -8,7 +8,8 @@
 //! The median site lets go when B = ln 2, at a mean depth of (integral x^3 s^m)/(integral x^2 s^m). Line of Preston &
 //! White 1934, Dey & Kranz 1985, Rauenzahn & Tester 1989 (form recalled, re-derived). Constant stress gradient gives
 //! about Gamma(3) in depth. A flake is not thinner than a grain nor than the energy floor K^2 (1 + nu) / s^2 (derived from
-//! h >= Gc E / ((1 - nu) s^2) with Gc = K^2 (1 - nu^2) / E).
+//! h >= Gc E / ((1 - nu) s^2) with Gc = K^2 (1 - nu^2) / E). The grain counts up to half a millimetre: coarse granite
+//! does shed flakes thinner than its grains, which cleave.
 //!
 //! Quadrature: three Gauss points per cell on the linear interpolant of s; stops where s has fallen to .35 of its
 //! largest value, below which s^m adds less than 3e-4 for m >= 8.
@@ -99,9 +100,12 @@ fn power(x: Lanes, m: f64) -> Lanes {
     }
 }
 
-/// Thickness of a flake: its mean depth, not under a grain nor the energy floor at stress `stress_pa`.
+/// Largest floor that a grain sets, m (judgement).
+const GRAIN_FLOOR_M: f64 = 0.5e-3;
+
+/// Thickness of a flake: its mean depth, not under a grain (half a millimetre at most) nor the energy floor at stress `stress_pa`.
 pub fn thickness_m(mean_depth_m: f64, grain_m: f64, energy_floor_pa2_m: f64, stress_pa: f64) -> f64 {
-    mean_depth_m.max(grain_m).max(energy_floor_pa2_m / (stress_pa * stress_pa))
+    mean_depth_m.max(grain_m.min(GRAIN_FLOOR_M)).max(energy_floor_pa2_m / (stress_pa * stress_pa))
 }
 
 /// Closed check form: face rise at which B = ln 2 for a constant gradient q/k and linear strain (derived).

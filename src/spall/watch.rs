@@ -2,8 +2,8 @@
 //!
 //! After every step: skin stress, membrane force, drive; then flake, slab, split and rind are asked in turn. First
 //! passage between two steps is placed by linear interpolation. When a slab lets go, the plate leaves during the fire with
-//! the settings' probability: the rock below becomes the face and heating goes on; if it stays it shields the rock and
-//! that face is done.
+//! the settings' probability: the rock below becomes the face, heating goes on and it may slab and flake in turn; if it
+//! stays it shields the rock below, and no further slab follows. Its own outer skin can still flake.
 
 use super::flake::{self, FlakeDraws, MEDIAN_RISK};
 use super::outcome::{Event, Events, Family, Outcome, SLABS_MAX};
@@ -90,16 +90,18 @@ struct DrawState {
     depth_m: f64,
     surface_k: f64,
     risk: f64,
+    risk_s: f64,
     flake_depth_m: f64,
     flake_stress_pa: f64,
     peak_drive_pa: f64,
     slabs: usize,
+    /// A plate has left.
+    stripped: bool,
     leaves_u: f64,
     /// A plate that stayed shields the face, or the generations are used up.
     done: bool,
     split: bool,
     rind_gone: bool,
-    flake_open: bool,
 }
 
 /// The observer.
@@ -122,15 +124,16 @@ impl<'a> Watch<'a> {
             depth_m: 0.0,
             surface_k: 0.0,
             risk: 0.0,
+            risk_s: 0.0,
             flake_depth_m: 0.0,
             flake_stress_pa: 0.0,
             peak_drive_pa: 0.0,
             slabs: 0,
+            stripped: false,
             leaves_u: draws.slab[l].leaves_u,
             done: draws.generations_max == 0,
             split: false,
             rind_gone: draws.rind.is_none(),
-            flake_open: true,
         });
         let outcome = std::array::from_fn(|l| Outcome {
             peak_surface_k: 0.0,
@@ -181,7 +184,7 @@ impl<'a> Watch<'a> {
     fn see_flake(&mut self, lane: usize, moment: &Moment, risk: f64, depth_m: f64, stress_pa: f64, surface_k: f64) {
         let draws = &self.draws.flake;
         let state = &mut self.state[lane];
-        if !state.flake_open || state.done || risk <= state.risk {
+        if risk <= state.risk {
             return;
         }
         let outcome = &mut self.outcome[lane];
@@ -202,24 +205,24 @@ impl<'a> Watch<'a> {
             }
         }
         state.risk = risk;
+        state.risk_s = moment.time_s.0[lane];
         state.flake_depth_m = depth_m;
         state.flake_stress_pa = stress_pa;
     }
 
     /// A draw whose median site never let go but whose flaked share counts: the thickness at its largest risk.
-    fn close_flake(&mut self, lane: usize, time_s: f64) {
+    fn close_flake(&mut self, lane: usize) {
         let draws = &self.draws.flake;
-        let state = &mut self.state[lane];
-        if state.flake_open && state.risk < MEDIAN_RISK && state.risk >= draws.counted_risk.0[lane] {
+        let state = &self.state[lane];
+        if state.risk < MEDIAN_RISK && state.risk >= draws.counted_risk.0[lane] {
             let floor = draws.energy_floor_pa2_m.0[lane];
             self.outcome[lane].events.push(Event {
                 family: Family::Flake,
-                time_s,
+                time_s: state.risk_s,
                 depth_m: flake::thickness_m(state.flake_depth_m, draws.grain_m, floor, state.flake_stress_pa),
                 surface_k: self.outcome[lane].peak_surface_k,
             });
         }
-        state.flake_open = false;
     }
 
     /// Strength of a draw whose cracking depth has reached `hottest_k`.
@@ -372,35 +375,34 @@ impl Observer for Watch<'_> {
             outcome.peak_flux_w_m2 = outcome.peak_flux_w_m2.max(moment.flux_w_m2.0[l]);
             outcome.absorbed_j_m2 = outcome.absorbed_j_m2.max(moment.absorbed_j_m2.0[l]);
             outcome.peak_stress_pa = outcome.peak_stress_pa.max(largest.0[l]);
-            if self.state[l].slabs == 0 {
+            if !self.state[l].stripped {
                 outcome.peak_tension_pa = outcome.peak_tension_pa.max(drive.largest_pa.0[l]);
             }
             self.see_flake(l, moment, risk.0[l], flake_depth.0[l], self.stress_pa[0].0[l], surface_k);
-            if !self.state[l].rind_gone && !self.state[l].done {
+            if !self.state[l].rind_gone && !self.state[l].stripped {
                 self.see_rind(l, column, moment);
             }
-            if !self.state[l].split && !self.state[l].done {
+            if !self.state[l].split {
                 self.see_split(l, column, moment, force.0[l]);
             }
             if !self.state[l].done
                 && let Some(thickness) = self.see_slab(l, column, moment, &drive)
             {
-                self.close_flake(l, moment.time_s.0[l]);
                 column.strip(self.material, l, thickness);
+                self.state[l].stripped = true;
                 stripped = true;
             }
             let state = &mut self.state[l];
             state.surface_k = column.temperature_k[0].0[l];
             state.peak_drive_pa = state.peak_drive_pa.max(drive.largest_pa.0[l]);
-            let over = surface_k < COLD_FACE_K && drive.largest_pa.0[l] < PAST_PEAK * state.peak_drive_pa;
-            enough &= over || (state.done && !state.flake_open);
+            enough &= surface_k < COLD_FACE_K && drive.largest_pa.0[l] < PAST_PEAK * state.peak_drive_pa;
         }
         if enough && !stripped { Verdict::Enough } else { Verdict::Continue }
     }
 
-    fn finish(&mut self, moment: &Moment) {
+    fn finish(&mut self, _moment: &Moment) {
         for l in 0..LANES {
-            self.close_flake(l, moment.time_s.0[l]);
+            self.close_flake(l);
         }
     }
 }
