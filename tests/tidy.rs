@@ -20,7 +20,7 @@ const MAY_IMPORT: [(&str, &str); 21] = [
     ("units", ""),
     ("bounds", "units"),
     ("numerics", "bounds units"),
-    ("ensemble", "numerics bounds units"),
+    ("ensemble", "numerics bounds units settings"), // settings: the number of replicates
     ("flag", ""),
     ("diagnostic", ""),
     ("site", "fire rock bounds units"),
