@@ -221,12 +221,14 @@ pub fn whittington_diffusivity(t_k: f64) -> f64 {
 }
 
 /// Specific heat of average crust (J/kgK) at `t_k` (K); .22178 kg/mol. Whittington, Hofmeister & Nabelek 2009.
+///
+/// The coefficient 47.9e-6 above the transition is as printed: the term is negligible. Used as a cross-check only.
 pub fn whittington_specific_heat(t_k: f64) -> f64 {
     const KG_PER_MOL: f64 = 0.22178;
     if t_k < WHITTINGTON_SPLIT_K {
         (199.5 + 0.0857 * t_k - 5.0e6 / (t_k * t_k)) / KG_PER_MOL
     } else {
-        (229.32 + 0.0323 * t_k - 47.9e6 / (t_k * t_k)) / KG_PER_MOL
+        (229.32 + 0.0323 * t_k - 47.9e-6 / (t_k * t_k)) / KG_PER_MOL
     }
 }
 
