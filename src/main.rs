@@ -1,2 +1,28 @@
-//! The program: parse, plan, run, exit.
-fn main() {}
+//! The `spallcast` program: parse, plan, run, exit code.
+
+mod cli;
+
+use clap::Parser;
+use cli::args::{Cli, Command};
+use cli::exit::Exit;
+use cli::messages::Messages;
+
+fn main() {
+    let cli = Cli::parse();
+    let (quiet, json) = match &cli.command {
+        Command::Assess(args) => (args.quiet, args.json_log),
+        Command::Check(args) => (args.quiet, args.json_log),
+        Command::Demo(args) => (args.quiet, false),
+        Command::Probe(_) | Command::Rocks(_) => (false, false),
+    };
+    let messages = Messages { quiet, json };
+    let ended = match &cli.command {
+        Command::Assess(_) => Ok(Exit::Done),
+        Command::Check(args) => cli::check::run(args),
+        Command::Probe(args) => cli::probe::run(args, &messages),
+        Command::Rocks(args) => cli::rocks::run(args),
+        Command::Demo(_) => Ok(Exit::Done),
+    };
+    let exit = ended.unwrap_or_else(|stop| stop.end(&messages));
+    std::process::exit(exit as i32);
+}

@@ -20,6 +20,7 @@ mod csv;
 mod geojson;
 mod geometry;
 mod properties;
+pub mod series;
 pub mod settings;
 mod text;
 pub mod trails;
@@ -36,6 +37,7 @@ use crate::diagnostic::{Diagnostic, Severity};
 pub use boulders::{BoulderFeature, Duplicates, read_boulders, read_boulders_from, refuse_duplicates};
 pub use burns::read_burns;
 pub use properties::Properties;
+pub use series::read_series;
 pub use settings::{RunFile, read_settings};
 pub use trails::read_trails;
 

@@ -1,0 +1,9 @@
+//! The command line: flags, plan, runs, exit codes, messages. The only part that prints, exits and owns threads.
+
+pub mod args;
+pub mod check;
+pub mod exit;
+pub mod messages;
+pub mod plan;
+pub mod probe;
+pub mod rocks;
