@@ -43,10 +43,13 @@ flags! {
     SlopeFromTerrain = "slope_from_terrain", "Slope was taken from the elevation raster.";
     BearingFromTerrain = "bearing_from_terrain", "Downslope bearing was taken from the elevation raster.";
     HeightFromTerrain = "height_from_terrain", "Height was taken from the elevation raster.";
-    BearingUnknown = "bearing_unknown", "Downslope bearing unknown; travel directions were taken as even over 90 degrees about the nearest trail.";
+    BearingUnknown = "bearing_unknown", "Downslope bearing unknown; travel directions were taken as even over 90 degrees about the nearest point of each trail segment.";
     NoTerrain = "no_terrain", "Reach was judged along straight rays; ridges and valleys between were not checked.";
     HeightUnusual = "height_unusual", "The recorded height looks wrong (zero, feet, or far from its neighbours or the raster).";
     BurntThroughSupport = "burnt_through_support", "The support is burnt through.";
+    SourceNotRecorded = "source_not_recorded", "Slope or size is not recorded; no source likelihood, only a place in the inspection order.";
+    ShakingConsidered = "shaking_considered", "The settings ask for shaking; the pseudo-static coefficient overstates overturning by short shaking.";
+    TerrainGap = "terrain_gap", "The elevation raster has gaps or ends along the way; those stretches were not checked for ridges and valleys.";
     BaseScarMeasured = "base_scar_measured", "A scar measured at the base replaced the computed loss.";
 }
 

@@ -5,6 +5,7 @@
 
 use crate::ensemble::distribution::Distribution;
 use crate::rock::Property;
+use crate::rockfall::{fragment, friction};
 
 /// The whole run's settings.
 #[derive(Debug, Clone, PartialEq)]
@@ -84,6 +85,40 @@ pub struct RockfallSettings {
     pub bearing_sd_deg: f64,
     /// Cut of the travel bearing either side, degrees (A).
     pub bearing_cut_deg: f64,
+    /// Half-width of the even spread of bearings where the downslope bearing is unknown, degrees (A).
+    pub unknown_bearing_deg: f64,
+    /// Friction by contact in the order of `Contact::ALL`, degrees (mixed; see `rockfall::friction`).
+    pub friction_deg: [Distribution; 5],
+    /// Chance that a support is gone within the horizon, in the order of `Support::ALL` (A).
+    pub support_loss: [f64; 5],
+    /// Uplift share of the normal weight in a wet spell (A).
+    pub uplift_share: Distribution,
+    /// Standard deviation of a slope read on the ground, degrees (A).
+    pub slope_sd_deg: f64,
+    /// Standard deviation of a slope taken from the raster, degrees (A: a cell is wider than a boulder's footing).
+    pub raster_slope_sd_deg: f64,
+    /// Relative standard deviation of setback and centroid height (A).
+    pub geometry_rel_sd: f64,
+    /// Least standard deviation of a seat depth, m (A).
+    pub seat_sd_m: f64,
+    /// Relative standard deviation of a seat depth (A).
+    pub seat_rel_sd: f64,
+    /// Share of draws that must stand today, else the measurements are in doubt.
+    pub kept_share_min: f64,
+    /// Share of a boulder's faces steeper than the friction of a fresh split (A).
+    pub boulder_face_share: Distribution,
+    /// The same for an outcrop (A).
+    pub outcrop_face_share: Distribution,
+    /// Factor on run-out over bare ground: 1.17 from a cleared stand (published).
+    pub bare_ground_factor: f64,
+    /// Factor on run-out over severely burnt ground (A).
+    pub severe_ground_factor: Distribution,
+    /// Standard deviation of heights where the record gives none, m; 0 leaves the angle as it is.
+    pub height_sd_m: f64,
+    /// Recorded height and raster may differ by this much, m; beyond, the raster is used and the height flagged (A).
+    pub height_tolerance_m: f64,
+    /// Within this distance a boulder whose height is unknown may reach a trail, m (A).
+    pub unknown_height_reach_m: f64,
 }
 
 impl Default for RockfallSettings {
@@ -95,6 +130,23 @@ impl Default for RockfallSettings {
             reach_sd_deg: 4.0,
             bearing_sd_deg: 10.0,
             bearing_cut_deg: 30.0,
+            unknown_bearing_deg: 45.0,
+            friction_deg: friction::FRICTION_DEG,
+            support_loss: friction::SUPPORT_LOSS,
+            uplift_share: Distribution::triangular(0.0, 0.05, 0.15),
+            slope_sd_deg: 2.0,
+            raster_slope_sd_deg: 5.0,
+            geometry_rel_sd: 0.15,
+            seat_sd_m: 0.02,
+            seat_rel_sd: 0.2,
+            kept_share_min: 0.05,
+            boulder_face_share: fragment::BOULDER_FACE_SHARE,
+            outcrop_face_share: fragment::OUTCROP_FACE_SHARE,
+            bare_ground_factor: 1.17,
+            severe_ground_factor: Distribution::triangular(1.0, 1.17, 1.40),
+            height_sd_m: 0.0,
+            height_tolerance_m: 30.0,
+            unknown_height_reach_m: 500.0,
         }
     }
 }
