@@ -168,6 +168,15 @@ pub struct TrailSettings {
     pub walking_speed_m_s: f64,
     /// Width of a person, m (A).
     pub person_width_m: f64,
+    /// Share of falls that must reach a stretch for an unassessed boulder to count as within reach (A: about the share
+    /// beyond 22 degrees).
+    pub in_reach_share: f64,
+    /// Share from which a burnt-through support keeps a stretch closed until looked at (A).
+    pub burnt_through_share: f64,
+    /// A stretch farther than this from every listed boulder counts as not looked at, m (A).
+    pub looked_at_m: f64,
+    /// Passages a day where the trail does not say, for the inspection order only (A).
+    pub passages_per_day_assumed: f64,
     /// Days until the next review of a proposal (A).
     pub review_days: f64,
     /// Day on which the run is made, ISO 8601; review dates count from it. `None`: the day of the run.
@@ -184,6 +193,10 @@ impl Default for TrailSettings {
             vulnerability: 0.5,
             walking_speed_m_s: 1.0,
             person_width_m: 0.5,
+            in_reach_share: 1e-3,
+            burnt_through_share: 0.01,
+            looked_at_m: 300.0,
+            passages_per_day_assumed: 10.0,
             review_days: 30.0,
             as_of: None,
         }

@@ -9,10 +9,14 @@
 
 pub mod fragment;
 pub mod friction;
+pub mod place;
 pub mod points;
+pub mod profile;
+pub mod reach;
 pub mod release;
 pub mod source;
 pub mod statics;
+pub mod terrain;
 
 /// What one thermal draw did to a boulder, as its statics needs it.
 ///
