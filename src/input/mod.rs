@@ -7,6 +7,7 @@
 //! values      one value: number, word, date; its range and its message
 //! geometry    positions, rings, footprints, the antimeridian
 //! boulders, burns, trails   features and rows to domain types
+//! terrain     a GeoTIFF to an elevation raster
 //! settings    the TOML file to the run's settings and options
 //! ```
 //!
@@ -22,6 +23,7 @@ mod geometry;
 mod properties;
 pub mod series;
 pub mod settings;
+pub mod terrain;
 mod text;
 pub mod trails;
 mod user_rocks;

@@ -240,7 +240,7 @@ fn tally_boulder(
                 tan_slope: if below > 0.0 { (tan_reading + error) / below } else { f64::INFINITY },
                 tan_friction: points.friction_tan[contact][i],
                 setback_m: match record.centroid_setback_m {
-                    Some(x) => (x * (1.0 + rel_sd * points.setback_z[i])).max(0.0),
+                    Some(x) => x * (1.0 + rel_sd * points.setback_z[i]),
                     None => half_others_m * (0.4 + 0.5 * points.setback_u[i]),
                 },
                 centroid_height_m: match record.centroid_height_m {
