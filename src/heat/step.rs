@@ -116,7 +116,8 @@ impl Stepper {
             let (t, s) = material.temperature(content[i] + dt_s * k1[i], hottest[i]);
             stage_t[i] = t;
             let w = material.resistivity(t, s);
-            stage_w[i] = if remembers { w / factor[i] } else { w };
+            // The factor of this stage's own temperature: the one from the start of the step would cost an order.
+            stage_w[i] = if remembers { w / material.conductivity_factor(t, hottest[i].max(t)) } else { w };
         }
         let flux_then = then.flux_into(stage_t[0]);
         net_power(spread, stage_t, stage_w, flux_then, rhs, |_, _| {});

@@ -116,6 +116,16 @@ impl Face {
             *tension *= factor;
             convex = convex.max(Lanes::where_greater(*z, judged, Lanes::ZERO, *tension));
         }
+        // The judged depth lies between nodes.
+        for l in 0..LANES {
+            let below = depth_m.partition_point(|z| z.0[l] <= judged.0[l]);
+            if (1..depth_m.len()).contains(&below) {
+                let (z0, z1) = (depth_m[below - 1].0[l], depth_m[below].0[l]);
+                let (t0, t1) = (tension_pa[below - 1].0[l], tension_pa[below].0[l]);
+                let at = t0 + (t1 - t0) * (judged.0[l] - z0) / (z1 - z0);
+                convex.0[l] = convex.0[l].max(at);
+            }
+        }
         let patch = Lanes::from_fn(|l| {
             let z = (self.plan.peak_depth() * self.patch_m.0[l]).min(judged.0[l]);
             force_n_m.0[l] * self.plan.tension_per_force(self.patch_m.0[l], z)

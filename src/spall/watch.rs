@@ -190,15 +190,16 @@ impl<'a> Watch<'a> {
         let outcome = &mut self.outcome[lane];
         outcome.flaked_sites = -libm::expm1(-risk);
         if risk >= MEDIAN_RISK {
-            // ln B is close to linear in time over a step.
+            // Under a steady flux the rise, the depth and B are powers of time, so ln B is close to linear in ln t.
             let share =
                 if state.risk > 0.0 { libm::log(MEDIAN_RISK / state.risk) / libm::log(risk / state.risk) } else { 1.0 };
             if state.risk < MEDIAN_RISK {
-                let mean = state.flake_depth_m + share * (depth_m - state.flake_depth_m);
+                let mean = between_powers(state.flake_depth_m, depth_m, share);
+                let end_s = moment.time_s.0[lane];
                 let stress = state.flake_stress_pa + share * (stress_pa - state.flake_stress_pa);
                 outcome.events.push(Event {
                     family: Family::Flake,
-                    time_s: moment.time_s.0[lane] - (1.0 - share) * moment.step_s.0[lane],
+                    time_s: between_powers(end_s - moment.step_s.0[lane], end_s, share),
                     depth_m: flake::thickness_m(mean, draws.grain_m, draws.energy_floor_pa2_m.0[lane], stress),
                     surface_k: state.surface_k + share * (surface_k - state.surface_k),
                 });
@@ -340,6 +341,11 @@ impl<'a> Watch<'a> {
             drive.largest_pa.0[l] = drive.largest_pa.0[l].max(largest);
         }
     }
+}
+
+/// Between two positive values at a share of the way between their logarithms; the end where the start is zero.
+fn between_powers(start: f64, end: f64, share: f64) -> f64 {
+    if start > 0.0 { start * libm::pow(end / start, share) } else { end }
 }
 
 /// Value of a nodal array at a depth of one lane.
