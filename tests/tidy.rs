@@ -34,8 +34,8 @@ const MAY_IMPORT: [(&str, &str); 21] = [
     ("trail", "rockfall spall stress heat rock numerics ensemble bounds units site settings flag"),
     ("assess", "trail rockfall spall stress fire heat rock numerics ensemble bounds units site settings flag"),
     ("input", "BELOW"),
-    ("output", "BELOW"),
-    ("report", "BELOW output"),
+    ("output", "BELOW input"), // input: records go out with the geometry and properties they came with
+    ("report", "BELOW output input"),
     ("lib", "ANY"),
     ("main", "ANY"),
 ];

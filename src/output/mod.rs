@@ -1,4 +1,31 @@
 //! Numbers to layers, tables and records.
 pub mod message;
 pub mod probe_table;
+//! Numbers to layers, tables and records. Nothing here prints; files are written through [`directory`].
+//!
+//! ```text
+//! fields      the registry: every column of the boulder layer, once
+//! burns       what the boulders of a burn come to, and its columns
+//! inspection  the order of inspection and its table
+//! geojson     the layers and the newline-delimited form
+//! cautions    what goes with every layer, table and page
+//! run_record  what was run on what, and what came of it
+//! directory   files written beside and renamed, so that a failed run leaves the old ones
+//! rock_table  the catalogue as text and JSON
+//! ```
+
+pub mod burns;
+pub mod cautions;
+pub mod directory;
+pub mod fields;
+pub mod geojson;
+pub mod inspection;
 pub mod rock_table;
+pub mod run_record;
+
+pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, summarise_burns};
+pub use directory::{Committed, OutputDirectory, OutputError, WrittenFile};
+pub use fields::{BOULDER_FIELDS, BoulderResult, SourceColumns};
+pub use geojson::{LayerHead, write_boulder_line, write_boulders, write_burns};
+pub use inspection::{assign_ranks, inspection_order, write_inspection};
+pub use run_record::{InputRecord, OptionsRecord, RunCounts, RunRecord};
