@@ -69,6 +69,8 @@ const COLUMNS: [&str; 30] = [
 const PLACE: [&str; 2] = ["longitude", "latitude"];
 /// Difference between diameter and axes from which it is worth a warning: neither a tape nor an eye is that far off.
 const SIZE_DISAGREEMENT: f64 = 0.3;
+/// Difference between a diffusivity and the one its companions imply from which it is worth a warning.
+const PROPERTY_DISAGREEMENT: f64 = 0.1;
 /// What a boulder's geometry may be.
 const WANTED: &str = "a Point or a Polygon footprint";
 /// Standard remedy for an optional value.
@@ -105,7 +107,7 @@ pub enum Duplicates {
 /// What was read.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Summary {
-    /// The file as the run record names it.
+    /// The file as the run record names it; its first part only when the sink ended the reading.
     pub file: InputFile,
     /// Records handed on.
     pub records: usize,
@@ -154,6 +156,7 @@ fn read(
     let mut reader = Reader { name, catalogue, columns: Columns::new("boulder", known.clone()) };
     let mut findings = Vec::new();
     let mut seen: HashMap<u128, u64> = HashMap::new();
+    let mut stopped = false;
     let mut hand_on = |mut feature: BoulderFeature, line: u64| {
         if duplicates == Duplicates::RefuseLater
             && let Some(id) = feature.id.clone()
@@ -168,7 +171,9 @@ fn read(
                 }
             }
         }
-        sink(feature)
+        let flow = sink(feature);
+        stopped |= flow.is_break();
+        flow
     };
     let blank = head.iter().all(u8::is_ascii_whitespace);
     let records = if blank && name == super::STANDARD_INPUT {
@@ -186,7 +191,8 @@ fn read(
         findings.extend(table.findings);
         table.rows
     };
-    let file = text.finish(name).map_err(|e| reading_error(name, &e))?;
+    // Whoever has enough does not wait for the rest of the pipe.
+    let file = if stopped { text.so_far(name) } else { text.finish(name).map_err(|e| reading_error(name, &e))? };
     findings.extend(foreign_bytes(name, text));
     findings.extend(reader.columns.findings);
     if records == 0 {
@@ -256,7 +262,7 @@ impl Reader<'_> {
         let parts = match parts(raw, self.name, "boulder") {
             Ok(parts) => parts,
             Err(refusal) => {
-                feature.boulder = Err(refusal);
+                feature.boulder = Err(*refusal);
                 return feature;
             }
         };
@@ -302,6 +308,15 @@ impl Reader<'_> {
             // Cells may have moved: nothing else of the row is believed.
             feature.boulder = Err(finding);
             return feature;
+        }
+        if row.cells.iter().any(|(_, json)| json.contains("\\n")) {
+            record.warn(
+                "cell_with_line_break",
+                "a cell",
+                "text of several lines",
+                "one row of the sheet a line",
+                "if rows are missing after this one, look for an open quote here",
+            );
         }
         let remedy = "write decimal degrees in WGS 84";
         let place = match (record.coordinate("longitude", remedy), record.coordinate("latitude", remedy)) {
@@ -445,6 +460,26 @@ fn heating(record: &mut Record<'_>, rock: &str) -> HeatingRecord {
     let catalogue = format!("remove it to use the catalogue value for {rock}");
     let exposure = "correct it, or remove it to use the burn's";
     let diffusivity = record.number("diffusivity_mm2_s", &catalogue).map(|x| x * M2_S_PER_MM2_S);
+    let properties: Vec<(Property, f64)> = Property::ALL
+        .into_iter()
+        .filter(|p| *p != Property::Diffusivity)
+        .filter_map(|p| record.number(p.input_name(), &catalogue).map(|x| (p, x * p.si_per_input())))
+        .collect();
+    let figure = |wanted| properties.iter().find(|(p, _)| *p == wanted).map(|(_, x)| *x);
+    if let (Some(given), Some(k), Some(density), Some(heat)) =
+        (diffusivity, figure(Property::Conductivity), figure(Property::Density), figure(Property::SpecificHeat))
+    {
+        let implied = k / (density * heat);
+        if (given / implied).max(implied / given) > 1.0 + PROPERTY_DISAGREEMENT {
+            record.warn(
+                "properties_disagree",
+                "diffusivity_mm2_s",
+                &format!("{}", given / M2_S_PER_MM2_S),
+                &format!("about {:.2} from conductivity, density and specific heat", implied / M2_S_PER_MM2_S),
+                "give at most three of the four",
+            );
+        }
+    }
     HeatingRecord {
         diffusivity_m2_s: diffusivity,
         diffusivity_gsd: record.number("diffusivity_gsd", &catalogue),
@@ -457,11 +492,7 @@ fn heating(record: &mut Record<'_>, rock: &str) -> HeatingRecord {
         weathering: record.word("weathering", Weathering::parse, Weathering::ALL, Weathering::word),
         rind_m: record.number("rind_mm", OR_EMPTY).map(|x| x / MM_PER_M),
         moisture: record.word("moisture", Moisture::parse, Moisture::ALL, Moisture::word),
-        properties: Property::ALL
-            .into_iter()
-            .filter(|p| *p != Property::Diffusivity)
-            .filter_map(|p| record.number(p.input_name(), &catalogue).map(|x| (p, x * p.si_per_input())))
-            .collect(),
+        properties,
     }
 }
 

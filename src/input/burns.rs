@@ -59,7 +59,7 @@ pub fn read_burns(path: &Path) -> Result<Burns, InputError> {
         let parts = match parts(&raw, &name, "burn") {
             Ok(parts) => parts,
             Err(refusal) => {
-                refusals.push(refusal);
+                refusals.push(*refusal);
                 return ControlFlow::Continue(());
             }
         };

@@ -7,6 +7,9 @@ use std::collections::HashMap;
 
 use crate::diagnostic::{Diagnostic, Severity};
 
+/// Different names that are remembered, and spoken about, of one file.
+const NAMES_MAX: usize = 10_000;
+
 /// The names of one kind of record, and what was said about them already.
 pub(crate) struct Columns {
     record: &'static str,
@@ -28,6 +31,10 @@ impl Columns {
             return *known;
         }
         let key = fold(name);
+        // Names come from the file: a file with a new name in every feature must not fill the memory.
+        if self.seen.len() >= NAMES_MAX {
+            return self.known.iter().copied().find(|k| *k == key);
+        }
         let known = self.known.iter().copied().find(|k| *k == key);
         let finding = |severity, code| {
             Diagnostic::new(severity, code, file)
@@ -50,10 +57,7 @@ impl Columns {
                     .remedy(format!("rename it to {near:?} if that is what it means; it was not used")),
             );
         }
-        // Names come from the file: a file with a new name in every feature must not fill the memory.
-        if self.seen.len() < 10_000 {
-            self.seen.insert(name.to_owned(), known);
-        }
+        self.seen.insert(name.to_owned(), known);
         known
     }
 }

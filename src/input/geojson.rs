@@ -302,14 +302,15 @@ impl<'de> DeserializeSeed<'de> for Element<'_> {
 }
 
 /// Takes a feature apart. The error is a refusal of this feature alone.
-pub(crate) fn parts<'a>(feature: &RawFeature<'a>, name: &str, record: &'static str) -> Result<Parts<'a>, Diagnostic> {
+pub(crate) fn parts<'a>(
+    feature: &RawFeature<'a>,
+    name: &str,
+    record: &'static str,
+) -> Result<Parts<'a>, Box<Diagnostic>> {
     let refuse = |code, found: String, expected: &str, remedy: &str| {
-        Diagnostic::new(Severity::Refusal, code, name)
-            .about(record, None)
-            .at_line(Some(feature.line))
-            .found(format!("feature {} {found}", feature.index + 1))
-            .expected(expected)
-            .remedy(remedy)
+        let finding = Diagnostic::new(Severity::Refusal, code, name).about(record, None).at_line(Some(feature.line));
+        let found = format!("feature {} {found}", feature.index + 1);
+        Box::new(finding.found(found).expected(expected).remedy(remedy))
     };
     if depth(feature.text) > DEPTH_MAX {
         return Err(refuse(
@@ -341,7 +342,7 @@ pub(crate) fn parts<'a>(feature: &RawFeature<'a>, name: &str, record: &'static s
         return Err(refuse("not_a_feature", found, "the type \"Feature\"", "write one feature per element"));
     }
     if let Some(crs) = member("crs").and_then(|crs| wrong_crs(name, feature.line, crs.get())) {
-        return Err(crs);
+        return Err(Box::new(crs));
     }
     let properties = match member("properties") {
         None => Vec::new(),
@@ -385,7 +386,7 @@ fn wrong_crs(name: &str, line: u64, crs: &str) -> Option<Diagnostic> {
     Some(
         unusable(name, "wrong_crs")
             .at_line(Some(line))
-            .found(format!("the crs member is {}", show(crs)))
+            .found(format!("the crs member is {}", show(if system.is_empty() { crs } else { &system })))
             .expected("WGS 84 (CRS84) or no crs member")
             .remedy("export the layer again in WGS 84, longitude then latitude, degrees"),
     )

@@ -17,6 +17,7 @@ use serde::Deserialize;
 use serde_json::value::RawValue;
 
 use super::values::show;
+use crate::bounds;
 use crate::site::Position;
 
 /// Why a geometry cannot be used.
@@ -73,7 +74,7 @@ pub(crate) fn parse(raw: Option<&RawValue>, wanted: &str) -> Result<GeometryValu
     each_position(&value, &mut |p| {
         any = true;
         if first_flaw.is_none() {
-            first_flaw = position(p).err();
+            first_flaw = flat(p).err();
         }
     });
     match first_flaw {
@@ -101,8 +102,24 @@ fn each_position(value: &GeometryValue, each: &mut dyn FnMut(&RawPosition)) {
     }
 }
 
-/// One position, checked. A fourth number is allowed by the standard and ignored.
+/// One position with its height, checked. A fourth number is allowed by the standard and ignored.
 pub(crate) fn position(raw: &RawPosition) -> Result<Position, Flaw> {
+    let Coord { x: lon_deg, y: lat_deg } = flat(raw)?;
+    let height_m = raw.as_slice().get(2).copied();
+    let range = bounds::bound("elevation_m").expect("the range table has heights");
+    if let Some(h) = height_m.filter(|h| !range.holds(*h)) {
+        return Err(flaw(
+            "height_out_of_range",
+            format!("the height is {h}"),
+            &format!("{} m", range.range()),
+            "give heights in metres above sea level or leave them out",
+        ));
+    }
+    Ok(Position { lon_deg, lat_deg, height_m })
+}
+
+/// Longitude and latitude of one position, checked.
+fn flat(raw: &RawPosition) -> Result<Coord<f64>, Flaw> {
     let numbers = raw.as_slice();
     let [lon, lat, ..] = *numbers else {
         return Err(flaw(
@@ -113,22 +130,8 @@ pub(crate) fn position(raw: &RawPosition) -> Result<Position, Flaw> {
         ));
     };
     place_on_earth(lon, lat)?;
-    let height_m = numbers.get(2).copied();
-    if let Some(h) = height_m.filter(|h| !(HEIGHT_MIN_M..=HEIGHT_MAX_M).contains(h)) {
-        return Err(flaw(
-            "height_out_of_range",
-            format!("the height is {h}"),
-            &format!("{HEIGHT_MIN_M} to {HEIGHT_MAX_M} m"),
-            "give heights in metres above sea level or leave them out",
-        ));
-    }
-    Ok(Position { lon_deg: lon, lat_deg: lat, height_m })
+    Ok(Coord { x: lon, y: lat })
 }
-
-/// Below the shore of the Dead Sea, m (common practice, no source).
-const HEIGHT_MIN_M: f64 = -500.0;
-/// Above the highest summit, m (common practice, no source).
-const HEIGHT_MAX_M: f64 = 9000.0;
 
 /// Longitude and latitude in range, or the likely cause why not.
 pub(crate) fn place_on_earth(lon: f64, lat: f64) -> Result<(), Flaw> {
@@ -193,7 +196,7 @@ pub(crate) fn polygon(rings: &[Vec<RawPosition>]) -> Result<Polygon<f64>, Flaw> 
 }
 
 fn closed_ring(ring: &[RawPosition]) -> Result<Vec<Coord<f64>>, Flaw> {
-    let corners = ring.iter().map(|p| position(p).map(|p| Coord { x: p.lon_deg, y: p.lat_deg }));
+    let corners = ring.iter().map(flat);
     let mut corners = corners.collect::<Result<Vec<_>, _>>()?;
     if corners.len() < 4 {
         return Err(flaw(
@@ -221,9 +224,22 @@ fn closed_ring(ring: &[RawPosition]) -> Result<Vec<Coord<f64>>, Flaw> {
 
 /// Refuses edges that cross or run along one another. Rings that touch in a point are let pass.
 fn no_crossing(rings: &[Vec<Coord<f64>>]) -> Result<(), Flaw> {
+    // The sweep goes along x; it is fast when edges are short that way, so x and y change places when that helps.
+    let steps = || rings.iter().flat_map(|r| r.windows(2));
+    let along = |length: fn(&[Coord<f64>]) -> f64| {
+        let (longest, total) = steps().fold((0.0, 0.0), |(m, s): (f64, f64), w| (m.max(length(w)), s + length(w)));
+        if longest > 0.0 { total / longest } else { 0.0 }
+    };
+    let turned = along(|w| (w[1].x - w[0].x).abs()) > along(|w| (w[1].y - w[0].y).abs());
+    let turn = |c: Coord<f64>| if turned { Coord { x: c.y, y: c.x } } else { c };
     let edges = rings.iter().enumerate().flat_map(|(ring, corners)| {
         let last = corners.len() - 2;
-        corners.windows(2).enumerate().map(move |(at, w)| Edge { line: Line::new(w[0], w[1]), ring, at, last })
+        corners.windows(2).enumerate().map(move |(at, w)| Edge {
+            line: Line::new(turn(w[0]), turn(w[1])),
+            ring,
+            at,
+            last,
+        })
     });
     for (a, b, meeting) in edges.collect::<Intersections<Edge>>() {
         let at = match meeting {
@@ -237,6 +253,7 @@ fn no_crossing(rings: &[Vec<Coord<f64>>]) -> Result<(), Flaw> {
         if neighbours && matches!(meeting, LineIntersection::SinglePoint { .. }) {
             continue;
         }
+        let at = turn(at);
         return Err(flaw(
             "ring_crosses_itself",
             format!("the outline crosses itself near {:.6}, {:.6}", at.x, at.y),
@@ -291,7 +308,8 @@ pub(crate) fn standpoint(value: &GeometryValue, wanted: &str) -> Result<Position
     })?;
     // A footprint's height is the mean of its corners', when every corner has one.
     let corners = &rings[0][..rings[0].len() - 1];
-    let heights: Vec<f64> = corners.iter().filter_map(|p| p.as_slice().get(2).copied()).collect();
+    let heights = corners.iter().map(|p| position(p).map(|p| p.height_m)).collect::<Result<Vec<_>, _>>()?;
+    let heights: Vec<f64> = heights.into_iter().flatten().collect();
     let height_m = (heights.len() == corners.len()).then(|| heights.iter().sum::<f64>() / heights.len() as f64);
     let lon_deg = if inside.x() > 180.0 { inside.x() - 360.0 } else { inside.x() };
     Ok(Position { lon_deg, lat_deg: inside.y(), height_m })

@@ -196,6 +196,7 @@ fn parse_settings(content: &str, name: &str, folder: &Path, file: InputFile) -> 
         reader.check_together(&run.settings);
     }
     run.findings = reader.notes;
+    reader.errors.sort_by_key(|(_, span)| span.start);
     let mut errors = reader.errors.into_iter();
     match errors.next() {
         None => Ok(run),
@@ -210,6 +211,12 @@ fn parse_settings(content: &str, name: &str, folder: &Path, file: InputFile) -> 
 /// The line of a byte, from 1.
 fn line_of(content: &str, at: usize) -> u64 {
     1 + content.as_bytes()[..at.min(content.len())].iter().filter(|&&b| b == b'\n').count() as u64
+}
+
+/// The mixture as written: names, weights and where they stand.
+struct Mixture {
+    weights: Vec<(String, f64, Range<usize>)>,
+    span: Range<usize>,
 }
 
 /// Reads the values of one settings file and collects what is wrong with them.
@@ -414,7 +421,7 @@ impl Reader<'_> {
     }
 
     /// Weights of the mixture as written, with the spans of their names.
-    fn mixture(&mut self, table: &DeTable<'_>, span: Range<usize>) -> (Vec<(String, f64, Range<usize>)>, Range<usize>) {
+    fn mixture(&mut self, table: &DeTable<'_>, span: Range<usize>) -> Mixture {
         let mut weights = Vec::new();
         for (rock, value) in table {
             let key = format!("unknown_rock.{}", rock.get_ref());
@@ -424,15 +431,11 @@ impl Reader<'_> {
                 weights.push((rock.get_ref().to_string(), weight, rock.span()));
             }
         }
-        (weights, span)
+        Mixture { weights, span }
     }
 
     /// Weights that sum to 1, by catalogue key.
-    fn resolve_mixture(
-        &mut self,
-        catalogue: &Catalogue,
-        (weights, span): (Vec<(String, f64, Range<usize>)>, Range<usize>),
-    ) -> Vec<(String, f64)> {
+    fn resolve_mixture(&mut self, catalogue: &Catalogue, Mixture { weights, span }: Mixture) -> Vec<(String, f64)> {
         let total: f64 = weights.iter().map(|w| w.1).sum();
         if weights.is_empty() {
             let at = (span, "without a rock".to_owned());
@@ -467,6 +470,8 @@ impl Reader<'_> {
                 }
             }
         }
+        // The order of the file must not matter to the draws.
+        mixture.sort_by(|a, b| a.0.cmp(&b.0));
         mixture
     }
 

@@ -88,10 +88,14 @@ impl Text {
         })))
     }
 
-    /// The first [`CHUNK`] bytes of text, without consuming them.
+    /// The first bytes of text, without consuming them: a [`CHUNK`] of a file, at least one line of a pipe.
     pub(crate) fn head(&self) -> io::Result<Vec<u8>> {
         let mut inner = self.0.borrow_mut();
-        while inner.ready.len() - inner.at < CHUNK && !inner.ended {
+        let whole_line = |ready: &[u8]| {
+            let text = ready.trim_ascii_start();
+            text.contains(&b'\n') || text.len() >= CHUNK
+        };
+        while !whole_line(&inner.ready[inner.at..]) && inner.ready.len() - inner.at < CHUNK && !inner.ended {
             inner.fill()?;
         }
         let end = inner.ready.len().min(inner.at + CHUNK);
@@ -159,8 +163,15 @@ impl Text {
             inner.at = n;
             inner.fill()?;
         }
+        drop(inner);
+        Ok(self.so_far(name))
+    }
+
+    /// The file's name, and length and SHA-256 of what has been read of it.
+    pub(crate) fn so_far(&self, name: &str) -> InputFile {
+        let inner = self.0.borrow();
         let sha256 = inner.hasher.clone().finalize().iter().map(|b| format!("{b:02x}")).collect();
-        Ok(InputFile { name: name.to_owned(), bytes: inner.bytes, sha256 })
+        InputFile { name: name.to_owned(), bytes: inner.bytes, sha256 }
     }
 }
 

@@ -48,7 +48,7 @@ pub fn read_trails(path: &Path) -> Result<Trails, InputError> {
         let parts = match parts(&raw, &name, "trail") {
             Ok(parts) => parts,
             Err(refusal) => {
-                findings.push(left_out(refusal));
+                findings.push(left_out(*refusal));
                 return ControlFlow::Continue(());
             }
         };
