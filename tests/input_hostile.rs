@@ -359,3 +359,53 @@ fn every_hostile_file_meets_every_reader_without_a_panic() {
     }
     assert!(files >= 120, "{files}");
 }
+
+/// Codes that `src/input` gives to findings, taken from its text: a literal where a code stands.
+fn codes_in_source() -> std::collections::BTreeSet<String> {
+    let mut codes = std::collections::BTreeSet::new();
+    for entry in std::fs::read_dir(concat!(env!("CARGO_MANIFEST_DIR"), "/src/input")).unwrap() {
+        let text = std::fs::read_to_string(entry.unwrap().path()).unwrap();
+        let text: String = text.split("#[cfg(test)]").next().unwrap().split_whitespace().collect::<Vec<_>>().join(" ");
+        let starts = [
+            "Severity::Refusal, ",
+            "Severity::Warning, ",
+            "Severity::Note, ",
+            "flaw( ",
+            "flaw(",
+            "refuse( ",
+            "refuse(",
+            "warn( ",
+            "warn(",
+            "note( ",
+            "note(",
+            "finding(",
+            "code: ",
+            "unusable(",
+            "unusable(name, ",
+            "unusable(self.name, ",
+        ];
+        for start in starts {
+            for (at, _) in text.match_indices(&format!("{start}\"")) {
+                let code: String = text[at + start.len() + 1..].chars().take_while(|c| *c != '"').collect();
+                codes.insert(code);
+            }
+        }
+    }
+    codes.remove("not_read");
+    codes
+}
+
+#[test]
+fn every_code_is_listed_in_the_docs_and_the_docs_list_no_other() {
+    let docs = std::fs::read_to_string(concat!(env!("CARGO_MANIFEST_DIR"), "/docs/inputs.md")).unwrap();
+    let table = docs.split("## Codes of findings").nth(1).expect("the section is there");
+    let listed: std::collections::BTreeSet<String> = table
+        .lines()
+        .filter_map(|l| l.strip_prefix("| `"))
+        .flat_map(|l| {
+            l.split(" |").next().unwrap().split(", ").map(|c| c.trim_matches('`').to_owned()).collect::<Vec<_>>()
+        })
+        .collect();
+    assert_eq!(codes_in_source(), listed);
+    assert!(listed.len() > 50, "{}", listed.len());
+}

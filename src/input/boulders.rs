@@ -3,9 +3,6 @@
 //! Each record of the file becomes one [`BoulderFeature`]: its geometry and properties as they came, and either the
 //! boulder in SI or the finding that refuses it. Memory is one record, plus 16 bytes a record where repeated names are
 //! watched for while streaming.
-//!
-//! Size: the radius of the sphere of equal volume, R = (a b c)^(1/3) / 2 of the full axes, or half the diameter. Axes win
-//! over a diameter; a difference above 30 % is a warning.
 
 use std::borrow::Cow;
 use std::collections::HashMap;
@@ -22,60 +19,16 @@ use super::columns::Columns;
 use super::geojson::{RawFeature, layout, parts, read_features};
 use super::geometry::{self, Flaw};
 use super::text::Text;
-use super::values::{Record, show};
-use super::{InputError, InputFile, Properties, foreign_bytes, nothing_inside, open, reading_error};
+use super::values::Record;
+use super::{InputError, InputFile, Properties, boulder_record, foreign_bytes, nothing_inside, open, reading_error};
 use crate::diagnostic::{Diagnostic, Severity};
-use crate::fire::exposure::ExposureClass;
-use crate::rock::{Catalogue, Property, Resolution};
-use crate::site::{
-    Boulder, Contact, HeatingRecord, Kind, Moisture, Position, RockChoice, StandingRecord, Support, Weathering,
-};
-use crate::units::{M2_S_PER_MM2_S, MM_PER_M, SECONDS_PER_MINUTE};
+use crate::rock::Catalogue;
+use crate::site::{Boulder, Kind, Position, RockChoice};
 
-/// Columns of a boulder besides the catalogue's properties.
-const COLUMNS: [&str; 30] = [
-    "boulder_id",
-    "rock",
-    "diameter_m",
-    "axis_a_m",
-    "axis_b_m",
-    "axis_c_m",
-    "kind",
-    "diffusivity_mm2_s",
-    "diffusivity_gsd",
-    "residence_min",
-    "exposure",
-    "heated_fraction",
-    "standoff_m",
-    "log_diameter_m",
-    "weathering",
-    "rind_mm",
-    "moisture",
-    "slope_deg",
-    "downslope_azimuth_deg",
-    "contact",
-    "seat_depth_m",
-    "centroid_setback_m",
-    "centroid_height_m",
-    "support",
-    "base_scar_mm",
-    "elevation_m",
-    "elevation_sd_m",
-    "observed_on",
-    "longitude",
-    "latitude",
-];
 /// Columns a table cannot do without.
 const PLACE: [&str; 2] = ["longitude", "latitude"];
-/// Difference between diameter and axes from which it is worth a warning: neither a tape nor an eye is that far off.
-const SIZE_DISAGREEMENT: f64 = 0.3;
-/// Difference between a diffusivity and the one its companions imply from which it is worth a warning.
-const PROPERTY_DISAGREEMENT: f64 = 0.1;
 /// What a boulder's geometry may be.
 const WANTED: &str = "a Point or a Polygon footprint";
-/// Standard remedy for an optional value.
-const OR_EMPTY: &str = "correct it, or leave it empty when it was not recorded";
-
 /// One record of the inventory.
 #[derive(Debug, Clone)]
 pub struct BoulderFeature {
@@ -151,8 +104,7 @@ fn read(
     mut sink: impl FnMut(BoulderFeature) -> ControlFlow<()>,
 ) -> Result<Summary, InputError> {
     let head = text.head().map_err(|e| reading_error(name, &e))?;
-    let mut known: Vec<&'static str> = COLUMNS.to_vec();
-    known.extend(Property::ALL.iter().map(|p| p.input_name()));
+    let known = boulder_record::columns();
     let mut reader = Reader { name, catalogue, columns: Columns::new("boulder", known.clone()) };
     let mut findings = Vec::new();
     let mut seen: HashMap<u128, u64> = HashMap::new();
@@ -357,15 +309,15 @@ impl Reader<'_> {
                 None
             }
         };
-        let rock = self.rock(&mut record);
+        let rock = boulder_record::rock(&mut record, self.catalogue);
         let rock_name = match &rock {
             Some(RockChoice::Named(key)) => key.clone(),
             _ => "the rock".to_owned(),
         };
         let kind = record.word("kind", Kind::parse, Kind::ALL, Kind::word).unwrap_or(Kind::Boulder);
-        let (radius_m, axes_m) = size(&mut record, kind);
-        let heating = heating(&mut record, &rock_name);
-        let standing = standing(&mut record);
+        let (radius_m, axes_m) = boulder_record::size(&mut record, kind);
+        let heating = boulder_record::heating(&mut record, &rock_name);
+        let standing = boulder_record::standing(&mut record);
         let elevation_m = record.number("elevation_m", "give metres above sea level, or leave it empty");
         let mut refusals = std::mem::take(&mut record.refusals).into_iter();
         feature.remarks = std::mem::take(&mut record.remarks);
@@ -378,136 +330,5 @@ impl Reader<'_> {
             (None, ..) => unreachable!("a record without name, place or rock has been refused"),
         };
         feature.remarks.extend(refusals);
-    }
-}
-
-impl Reader<'_> {
-    /// The rock of a record; `None` when its name is not known, which refuses the record.
-    fn rock(&self, record: &mut Record<'_>) -> Option<RockChoice> {
-        let Some(text) = record.text("rock") else { return Some(RockChoice::Mixture) };
-        match self.catalogue.resolve(&text) {
-            Resolution::Rock(key) => Some(RockChoice::Named(key)),
-            Resolution::Unknown => Some(RockChoice::Mixture),
-            Resolution::NotFound { nearest } => {
-                let remedy = "write \"unknown\" when it was not recorded, or add the rock to the settings file";
-                let expected = match nearest.len() {
-                    0 => "a catalogue rock or alias (the command `rocks` lists them)".to_owned(),
-                    _ => format!("a catalogue rock or alias, for example {}", nearest.join(", ")),
-                };
-                record.refuse("rock_unknown", "rock", &format!("{:?}", show(&text)), &expected, remedy);
-                None
-            }
-        }
-    }
-}
-
-/// Radius of the sphere of equal volume and the axes, longest first.
-fn size(record: &mut Record<'_>, kind: Kind) -> (Option<f64>, Option<[f64; 3]>) {
-    let remedy = "measure it again, or leave it empty and give the other size";
-    let diameter = record.number("diameter_m", remedy);
-    let axes = ["axis_a_m", "axis_b_m", "axis_c_m"].map(|name| record.number(name, remedy));
-    let given = axes.iter().flatten().count();
-    let before = record.refusals.len();
-    if let [Some(a), Some(b), Some(c)] = axes {
-        let mut sorted = [a, b, c];
-        sorted.sort_by(|x, y| y.total_cmp(x));
-        if sorted != [a, b, c] {
-            record.note(
-                "axes_sorted",
-                "axis_a_m, axis_b_m, axis_c_m",
-                &format!("{a}, {b}, {c}"),
-                "longest first",
-                "they were sorted",
-            );
-        }
-        let of_axes = libm::cbrt(a * b * c);
-        if let Some(d) = diameter.filter(|d| (d / of_axes).max(of_axes / d) > 1.0 + SIZE_DISAGREEMENT) {
-            record.warn(
-                "sizes_disagree",
-                "diameter_m",
-                &format!("{d}"),
-                &format!("about {of_axes:.2} from the three axes"),
-                "check both; the axes were used",
-            );
-        }
-        return (Some(of_axes / 2.0), Some(sorted));
-    }
-    if given > 0 && diameter.is_some() {
-        record.warn(
-            "axes_incomplete",
-            "axis_a_m, axis_b_m, axis_c_m",
-            &format!("given {given} of 3 times"),
-            "all three or none",
-            "the diameter was used",
-        );
-    }
-    if diameter.is_none() && kind == Kind::Boulder && before == record.refusals.len() {
-        let found = match given {
-            0 => "there is no size".to_owned(),
-            n => format!("only {n} of three axes are given"),
-        };
-        let finding = record
-            .finding(Severity::Refusal, "size_missing")
-            .found(found)
-            .expected("diameter_m, or axis_a_m, axis_b_m and axis_c_m")
-            .remedy("measure it; only an outcrop may be recorded without a size");
-        record.refusals.push(finding);
-    }
-    (diameter.map(|d| d / 2.0), None)
-}
-
-fn heating(record: &mut Record<'_>, rock: &str) -> HeatingRecord {
-    let catalogue = format!("remove it to use the catalogue value for {rock}");
-    let exposure = "correct it, or remove it to use the burn's";
-    let diffusivity = record.number("diffusivity_mm2_s", &catalogue).map(|x| x * M2_S_PER_MM2_S);
-    let properties: Vec<(Property, f64)> = Property::ALL
-        .into_iter()
-        .filter(|p| *p != Property::Diffusivity)
-        .filter_map(|p| record.number(p.input_name(), &catalogue).map(|x| (p, x * p.si_per_input())))
-        .collect();
-    let figure = |wanted| properties.iter().find(|(p, _)| *p == wanted).map(|(_, x)| *x);
-    if let (Some(given), Some(k), Some(density), Some(heat)) =
-        (diffusivity, figure(Property::Conductivity), figure(Property::Density), figure(Property::SpecificHeat))
-    {
-        let implied = k / (density * heat);
-        if (given / implied).max(implied / given) > 1.0 + PROPERTY_DISAGREEMENT {
-            record.warn(
-                "properties_disagree",
-                "diffusivity_mm2_s",
-                &format!("{}", given / M2_S_PER_MM2_S),
-                &format!("about {:.2} from conductivity, density and specific heat", implied / M2_S_PER_MM2_S),
-                "give at most three of the four",
-            );
-        }
-    }
-    HeatingRecord {
-        diffusivity_m2_s: diffusivity,
-        diffusivity_gsd: record.number("diffusivity_gsd", &catalogue),
-        residence_s: record.number("residence_min", exposure).map(|x| x * SECONDS_PER_MINUTE),
-        exposure: record.word("exposure", ExposureClass::parse, ExposureClass::ALL, ExposureClass::word),
-        heated_fraction: record
-            .number("heated_fraction", "give the share of the surface from 0 to 1, or leave it empty"),
-        standoff_m: record.number("standoff_m", OR_EMPTY),
-        log_diameter_m: record.number("log_diameter_m", OR_EMPTY),
-        weathering: record.word("weathering", Weathering::parse, Weathering::ALL, Weathering::word),
-        rind_m: record.number("rind_mm", OR_EMPTY).map(|x| x / MM_PER_M),
-        moisture: record.word("moisture", Moisture::parse, Moisture::ALL, Moisture::word),
-        properties,
-    }
-}
-
-fn standing(record: &mut Record<'_>) -> StandingRecord {
-    let azimuth = "give degrees from true north, 0 to 360, or leave it empty";
-    StandingRecord {
-        slope_deg: record.number("slope_deg", "give degrees along the fall line, not per cent, or leave it empty"),
-        downslope_azimuth_deg: record.number("downslope_azimuth_deg", azimuth),
-        contact: record.word("contact", Contact::parse, Contact::ALL, Contact::word),
-        seat_depth_m: record.number("seat_depth_m", OR_EMPTY),
-        centroid_setback_m: record.number("centroid_setback_m", OR_EMPTY),
-        centroid_height_m: record.number("centroid_height_m", OR_EMPTY),
-        support: record.word("support", Support::parse, Support::ALL, Support::word),
-        base_scar_m: record.number("base_scar_mm", OR_EMPTY).map(|x| x / MM_PER_M),
-        elevation_sd_m: record.number("elevation_sd_m", OR_EMPTY),
-        observed_on: record.date("observed_on"),
     }
 }

@@ -14,14 +14,17 @@
 //! One wrong feature never stops a run: it comes out with a refusal. A file that cannot be used at all is an
 //! [`InputError`]. `docs/inputs.md` lists columns, ranges and decisions.
 
+mod boulder_record;
 pub mod boulders;
 pub mod burns;
 mod columns;
 mod csv;
 mod geojson;
+mod geojson_errors;
 mod geometry;
 mod properties;
 pub mod series;
+mod setting_values;
 pub mod settings;
 pub mod terrain;
 mod text;

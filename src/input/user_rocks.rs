@@ -17,7 +17,7 @@ use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
 use super::columns::{fold, nearest};
-use super::settings::Reader;
+use super::setting_values::Reader;
 use super::values::show;
 use crate::ensemble::distribution::{Distribution, Shape};
 use crate::rock::Property;
