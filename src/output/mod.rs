@@ -20,6 +20,9 @@ pub mod directory;
 pub mod fields;
 pub mod geojson;
 pub mod inspection;
+//! Numbers to layers, tables and records.
+pub mod message;
+pub mod probe_table;
 pub mod rock_table;
 pub mod run_record;
 
