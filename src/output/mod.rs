@@ -1,6 +1,3 @@
-//! Numbers to layers, tables and records.
-pub mod message;
-pub mod probe_table;
 //! Numbers to layers, tables and records. Nothing here prints; files are written through [`directory`].
 //!
 //! ```text
@@ -11,6 +8,8 @@ pub mod probe_table;
 //! cautions    what goes with every layer, table and page
 //! run_record  what was run on what, and what came of it
 //! directory   files written beside and renamed, so that a failed run leaves the old ones
+//! message     findings and errors as lines for people and machines
+//! probe_table one boulder through time and depth, as text and JSON
 //! rock_table  the catalogue as text and JSON
 //! ```
 
@@ -20,7 +19,6 @@ pub mod directory;
 pub mod fields;
 pub mod geojson;
 pub mod inspection;
-//! Numbers to layers, tables and records.
 pub mod message;
 pub mod probe_table;
 pub mod rock_table;
