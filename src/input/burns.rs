@@ -7,11 +7,13 @@ use std::collections::HashMap;
 use std::ops::ControlFlow;
 use std::path::Path;
 
+use serde_json::value::RawValue;
+
 use super::columns::Columns;
 use super::geojson::{Layout, layout, parts, read_features};
 use super::geometry;
 use super::values::Record;
-use super::{InputError, InputFile, foreign_bytes, nothing_inside, open, reading_error};
+use super::{InputError, InputFile, Properties, foreign_bytes, nothing_inside, open, reading_error};
 use crate::diagnostic::{Diagnostic, Severity};
 use crate::fire::exposure::ExposureClass;
 use crate::site::{Burn, GroundAfter};
@@ -33,11 +35,22 @@ const WANTED: &str = "a Polygon or MultiPolygon";
 const WHY_ALL: &str = "every burn must be right, or boulders inside the wrong one would look unburnt";
 const OR_EMPTY: &str = "correct it, or leave it empty when it is not known";
 
+/// What goes through from a burn's feature to its layer unchanged.
+#[derive(Debug, Clone)]
+pub struct Kept {
+    /// Its properties as they came.
+    pub properties: Properties,
+    /// The feature's own `id` member, as written.
+    pub feature_id: Option<Box<RawValue>>,
+}
+
 /// What a burn file held.
 #[derive(Debug, Clone)]
 pub struct Burns {
     /// The burns in the order of the file.
     pub burns: Vec<Burn>,
+    /// What each came with, in the same order.
+    pub kept: Vec<Kept>,
     /// Notes and warnings.
     pub findings: Vec<Diagnostic>,
     /// The file as the run record names it.
@@ -53,7 +66,7 @@ pub fn read_burns(path: &Path) -> Result<Burns, InputError> {
     let head = text.head().map_err(|e| reading_error(&name, &e))?;
     let layout = layout(&name, &head).unwrap_or(Layout::Document);
     let mut columns = Columns::new("burn", COLUMNS.to_vec());
-    let (mut burns, mut findings, mut refusals) = (Vec::new(), Vec::new(), Vec::new());
+    let (mut burns, mut kept, mut findings, mut refusals) = (Vec::new(), Vec::new(), Vec::new(), Vec::new());
     let mut lines: HashMap<String, u64> = HashMap::new();
     read_features(&text, &name, layout, &mut |raw| {
         let parts = match parts(&raw, &name, "burn") {
@@ -102,6 +115,10 @@ pub fn read_burns(path: &Path) -> Result<Burns, InputError> {
         findings.append(&mut record.remarks);
         refusals.append(&mut record.refusals);
         burns.push(burn);
+        kept.push(Kept {
+            properties: Properties::from_pairs(parts.properties.iter().map(|(n, v)| (n.as_ref(), v.get()))),
+            feature_id: parts.id.map(ToOwned::to_owned),
+        });
         ControlFlow::Continue(())
     })?;
     let file = text.finish(&name).map_err(|e| reading_error(&name, &e))?;
@@ -119,6 +136,6 @@ pub fn read_burns(path: &Path) -> Result<Burns, InputError> {
     });
     match refusals.next() {
         Some(first) => Err(InputError { others: refusals.collect(), ..InputError::new(first) }),
-        None => Ok(Burns { burns, findings, file }),
+        None => Ok(Burns { burns, kept, findings, file }),
     }
 }
