@@ -10,6 +10,7 @@ use super::fields::{BoulderResult, Field, Value, field, number};
 use super::inspection;
 use crate::assess::{SpallSummary, Status};
 use crate::input::Properties;
+use crate::input::burns::Burns;
 use crate::numerics::quantile::{mean, quantile_sorted, sorted};
 use crate::site::Burn;
 use crate::units::MM_PER_M;
@@ -63,6 +64,19 @@ pub struct BurnSummary {
     pub p_source_mean: Option<f64>,
     /// Names of the assessed boulders that come first in the order of inspection.
     pub worst_boulders: Vec<String>,
+}
+
+/// Every burn of a file with what its boulders come to.
+pub fn burn_results(burns: &Burns, results: &[BoulderResult]) -> Vec<BurnResult> {
+    let summaries = summarise_burns(burns.burns.len(), results);
+    (burns.burns.iter().zip(&burns.kept).zip(summaries))
+        .map(|((burn, kept), summary)| BurnResult {
+            burn: burn.clone(),
+            properties: kept.properties.clone(),
+            feature_id: kept.feature_id.clone(),
+            summary,
+        })
+        .collect()
 }
 
 /// Summaries of `burns` burns, in the order of the burn file.

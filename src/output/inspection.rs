@@ -180,7 +180,8 @@ pub fn write_inspection(out: impl io::Write, results: &[BoulderResult], order: &
                 Value::Null => table.write_field("")?,
                 Value::Bool(yes) => table.write_field(yes.to_string())?,
                 Value::Integer(n) => table.write_field(n.to_string())?,
-                Value::Number(x) => table.write_field(x.to_string())?,
+                Value::Number(x) if x.is_finite() => table.write_field(x.to_string())?,
+                Value::Number(_) => table.write_field("")?,
             }
         }
         table.write_record(None::<&[u8]>)?;

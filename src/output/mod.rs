@@ -24,7 +24,7 @@ pub mod probe_table;
 pub mod rock_table;
 pub mod run_record;
 
-pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, summarise_burns};
+pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, burn_results, summarise_burns};
 pub use directory::{Committed, OutputDirectory, OutputError, WrittenFile};
 pub use fields::{BOULDER_FIELDS, BoulderResult, SourceColumns};
 pub use geojson::{LayerHead, write_boulder_line, write_boulders, write_burns};
