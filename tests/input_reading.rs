@@ -440,28 +440,3 @@ fn the_undamaged_texts_are_good() {
     let (_folder, path) = file("s.toml", std::str::from_utf8(RICH_SETTINGS).unwrap());
     read_settings(&path).unwrap();
 }
-
-#[test]
-fn zz_measure() {
-    let mut text = String::from("{\"type\":\"FeatureCollection\",\"features\":[\n");
-    for i in 0..200_000 {
-        if i > 0 {
-            text.push_str(",\n");
-        }
-        text.push_str(&feature(PLACE, &format!(r#"{{"boulder_id":"B{i}","rock":"granite","diameter_m":1.4,"slope_deg":31,"downslope_azimuth_deg":180,"contact":"coarse_soil","seat_depth_m":0.1,"centroid_setback_m":0.5,"centroid_height_m":0.5,"support":"charred","elevation_m":2100,"team_note":"kept for later {i}","weathering":"slight"}}"#)));
-    }
-    text.push_str("]}");
-    let t = std::time::Instant::now();
-    let f = read("b.geojson", &text).unwrap();
-    eprintln!(
-        "MEASURE {:?} for {} MB, {} features of {} bytes",
-        t.elapsed(),
-        text.len() / 1_000_000,
-        f.len(),
-        std::mem::size_of::<BoulderFeature>()
-    );
-    let s = std::fs::read_to_string("/proc/self/status").unwrap();
-    for l in s.lines().filter(|l| l.starts_with("VmHWM") || l.starts_with("VmRSS")) {
-        eprintln!("MEASURE {l}");
-    }
-}

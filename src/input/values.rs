@@ -141,13 +141,14 @@ impl<'a> Record<'a> {
 
     /// A number in the unit of its name, within its range. `remedy` is what to do when it is not.
     pub(crate) fn number(&mut self, name: &'static str, remedy: &str) -> Option<f64> {
+        self.raw(name)?;
         let range = bounds::bound(name).unwrap_or_else(|| panic!("the range table lacks {name}"));
-        self.number_within(name, (range.min, range.max), range.range(), remedy)
+        self.number_within(name, (range.min, range.max), &|| range.range(), remedy)
     }
 
     /// A coordinate column: any finite number, judged as a pair later.
     pub(crate) fn coordinate(&mut self, name: &'static str, remedy: &str) -> Option<f64> {
-        self.number_within(name, (f64::MIN, f64::MAX), "decimal degrees".to_owned(), remedy)
+        self.number_within(name, (f64::MIN, f64::MAX), &|| "decimal degrees".to_owned(), remedy)
     }
 
     /// The plain number of a column, without findings.
@@ -162,10 +163,17 @@ impl<'a> Record<'a> {
         &mut self,
         name: &'static str,
         (min, max): (f64, f64),
-        expected: String,
+        expected: &dyn Fn() -> String,
         remedy: &str,
     ) -> Option<f64> {
         let raw = self.raw(name)?;
+        // The ordinary case, without building any text.
+        if let Value::Number(number) = value(raw)
+            && let Some(x) = number.parse::<f64>().ok().filter(|x| (min..=max).contains(x))
+        {
+            // Negative zero is zero.
+            return Some(x + 0.0);
+        }
         let (number, found) = match value(raw) {
             Value::Missing => return None,
             Value::Number(number) => (number.parse::<f64>().ok(), number.to_owned()),
@@ -186,18 +194,17 @@ impl<'a> Record<'a> {
         let found = show(&found);
         match number {
             None => {
-                self.refuse("not_a_number", name, &found, &expected, &number_remedy(&found, remedy));
+                self.refuse("not_a_number", name, &found, &expected(), &number_remedy(&found, remedy));
                 None
             }
             Some(x) if !x.is_finite() => {
-                self.refuse("not_finite", name, &found, &expected, remedy);
+                self.refuse("not_finite", name, &found, &expected(), remedy);
                 None
             }
             Some(x) if !(min..=max).contains(&x) => {
-                self.refuse("value_out_of_range", name, &found, &expected, remedy);
+                self.refuse("value_out_of_range", name, &found, &expected(), remedy);
                 None
             }
-            // Negative zero is zero.
             Some(x) => Some(x + 0.0),
         }
     }
