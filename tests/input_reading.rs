@@ -202,6 +202,10 @@ fn settings_are_read_flat_or_by_subject() {
         [rockfall]
         reach_mean_deg = 33.5
         reach-sd-deg = 2.65
+        uplift_share = [0, 0.1, 0.2]
+        friction_deg = { burnt_duff = [18, 25, 32] }
+        [rockfall.support_loss]
+        charred = 0.6
         [unknown_rock]
         granodiorite = 3
         basalt = 1
@@ -223,6 +227,14 @@ fn settings_are_read_flat_or_by_subject() {
     assert_eq!((s.draws, s.seed, s.horizon_days), (1024, 16, 90.0));
     assert_eq!((s.trail.segment_m, s.trail.as_of), (100.0, Some(jiff::civil::date(2026, 9, 1))));
     assert_eq!((s.rockfall.reach_mean_deg, s.rockfall.reach_sd_deg), (33.5, 2.65));
+    let (r, d) = (&s.rockfall, Settings::default().rockfall);
+    assert_eq!((r.uplift_share.lower, r.uplift_share.centre, r.uplift_share.upper), (0.0, 0.1, 0.2));
+    for (contact, duff) in Contact::ALL.iter().map(|c| (*c, *c == Contact::BurntDuff)) {
+        let friction = r.friction_deg[contact as usize];
+        assert_eq!(friction == d.friction_deg[contact as usize], !duff);
+        assert!(!duff || (friction.lower, friction.centre, friction.upper) == (18.0, 25.0, 32.0));
+    }
+    assert_eq!((r.support_loss[Support::Charred as usize], r.support_loss[Support::Scorched as usize]), (0.6, 0.1));
     assert_eq!(s.unknown_rock, [("basalt".to_owned(), 0.25), ("granite".to_owned(), 0.75)]);
     let rock = &s.rocks[0];
     assert_eq!((rock.name.as_str(), rock.like.as_str(), rock.figures.len()), ("ridge_granite", "granite", 4));
@@ -234,6 +246,10 @@ fn settings_are_read_flat_or_by_subject() {
     assert!(run.catalogue.rock(&s.rocks[0].name).is_some());
     let codes: Vec<_> = run.findings.iter().map(|f| f.code).collect();
     assert_eq!(codes, ["weights_scaled"]);
+    let (_folder, path) =
+        file("twice.toml", "[rockfall]\nuplift_share = [0.2, 0.1, 0.3]\nsupport_loss = { gone = 1 }\n");
+    let codes: Vec<_> = read_settings(&path).unwrap_err().findings().map(|f| f.code).collect();
+    assert_eq!(codes, ["figure_unreadable", "setting_unknown"]);
     let (_folder, path) = file("empty.toml", "");
     assert_eq!(read_settings(&path).unwrap().settings, Settings::default());
 }

@@ -24,6 +24,7 @@ mod geojson_errors;
 mod geometry;
 mod properties;
 pub mod series;
+mod setting_names;
 mod setting_values;
 pub mod settings;
 pub mod terrain;

@@ -7,7 +7,9 @@ use toml::Spanned;
 use toml::de::DeValue;
 
 use super::values::show;
+use crate::bounds;
 use crate::diagnostic::{Diagnostic, Severity};
+use crate::ensemble::distribution::Distribution;
 
 /// The line of a byte, from 1.
 pub(super) fn line_of(content: &str, at: usize) -> u64 {
@@ -133,5 +135,57 @@ impl Reader<'_> {
     pub(super) fn path(&mut self, key: &str, value: &Spanned<DeValue<'_>>) -> Option<PathBuf> {
         let text = self.text(key, value)?;
         Some(if text == "-" { PathBuf::from(text) } else { self.folder.join(text) })
+    }
+
+    /// A triangular distribution `[lower end, mode, upper end]`, each within the range of `bound`.
+    pub(super) fn triangle(
+        &mut self,
+        key: &str,
+        bound: &'static str,
+        value: &Spanned<DeValue<'_>>,
+    ) -> Option<Distribution> {
+        let range = bounds::bound(bound).unwrap_or_else(|| panic!("the range table lacks {bound}"));
+        if let DeValue::Array(corners) = value.get_ref()
+            && corners.len() == 3
+        {
+            let corners =
+                corners.iter().map(|c| self.number(key, c, (range.min, range.max), &range.range())).collect::<Vec<_>>();
+            let [Some(low), Some(mode), Some(high)] = corners[..] else { return None };
+            if low <= mode && mode <= high {
+                return Some(Distribution::triangular(low, mode, high));
+            }
+        }
+        let expected = format!("[lower end, mode, upper end] within {}", range.range());
+        self.refuse("figure_unreadable", key, self.at(value), &expected, "write three numbers in rising order");
+        None
+    }
+
+    /// The members of a table whose names are words of a set.
+    pub(super) fn by_word<'t, 'i, T: Copy>(
+        &mut self,
+        key: &str,
+        value: &'t Spanned<DeValue<'i>>,
+        parse: fn(&str) -> Option<T>,
+        all: &[T],
+        word: fn(T) -> &'static str,
+    ) -> Vec<(T, &'t Spanned<DeValue<'i>>)> {
+        let words = all.iter().map(|w| word(*w)).collect::<Vec<_>>().join(", ");
+        let DeValue::Table(table) = value.get_ref() else {
+            let expected = format!("a table with any of {words}");
+            self.refuse("figure_unreadable", key, self.at(value), &expected, "write a table, or delete the line");
+            return Vec::new();
+        };
+        let mut members = Vec::new();
+        for (name, value) in table {
+            match parse(name.get_ref()) {
+                Some(choice) => members.push((choice, value)),
+                None => {
+                    let at = (name.span(), "no known word".to_owned());
+                    let label = format!("{key}.{}", show(name.get_ref()));
+                    self.refuse("setting_unknown", &label, at, &words, "use one of these words");
+                }
+            }
+        }
+        members
     }
 }

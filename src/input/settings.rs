@@ -14,13 +14,15 @@ use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
 use super::columns::{fold, nearest};
+use super::setting_names::{NUMERIC, Numeric, OTHER, SUBJECTS, TRIANGULAR};
 use super::setting_values::{Reader, line_of};
 use super::values::{iso_day, show};
 use super::{InputError, InputFile, foreign_bytes, open, reading_error, user_rocks};
 use crate::bounds;
 use crate::diagnostic::{Diagnostic, Severity};
 use crate::rock::{Catalogue, Resolution};
-use crate::settings::Settings;
+use crate::settings::{RockfallSettings, Settings};
+use crate::site::{Contact, Support};
 
 /// Longest settings file, bytes; a thousand rocks of the user's own stay below it.
 const LONGEST: u64 = 4 * 1024 * 1024;
@@ -57,55 +59,6 @@ pub struct RunFile {
     /// The file as the run record names it.
     pub file: InputFile,
 }
-
-/// Subjects that may have a table of their own.
-const SUBJECTS: [&str; 3] = ["spall", "rockfall", "trail"];
-
-/// A numeric setting: its name, its subject, whether it must be whole, and where it goes. Ranges are in [`crate::bounds`].
-struct Numeric(&'static str, &'static str, bool, fn(&mut RunFile, f64));
-
-/// Every numeric setting.
-const NUMERIC: &[Numeric] = &[
-    Numeric("draws", "", true, |r, x| r.settings.draws = x as usize),
-    Numeric("threads", "", true, |r, x| r.threads = Some(x as usize)),
-    Numeric("horizon_days", "", false, |r, x| r.settings.horizon_days = x),
-    Numeric("flake_share_counted", "spall", false, |r, x| r.settings.spall.flake_share_counted = x),
-    Numeric("slab_leaves_probability", "spall", false, |r, x| r.settings.spall.slab_leaves_probability = x),
-    Numeric("slab_generations_max", "spall", true, |r, x| r.settings.spall.slab_generations_max = x as usize),
-    Numeric("rain_mm_h", "spall", false, |r, x| r.settings.spall.rain_mm_h = x),
-    Numeric("flame_front_width_m", "spall", false, |r, x| r.settings.spall.flame_front_width_m = x),
-    Numeric("shaking_k", "rockfall", false, |r, x| r.settings.rockfall.shaking_k = x),
-    Numeric("wet_spell_probability", "rockfall", false, |r, x| r.settings.rockfall.wet_spell_probability = x),
-    Numeric("reach_mean_deg", "rockfall", false, |r, x| r.settings.rockfall.reach_mean_deg = x),
-    Numeric("reach_sd_deg", "rockfall", false, |r, x| r.settings.rockfall.reach_sd_deg = x),
-    Numeric("bearing_sd_deg", "rockfall", false, |r, x| r.settings.rockfall.bearing_sd_deg = x),
-    Numeric("bearing_cut_deg", "rockfall", false, |r, x| r.settings.rockfall.bearing_cut_deg = x),
-    Numeric("segment_m", "trail", false, |r, x| r.settings.trail.segment_m = x),
-    Numeric("keep_closed_at", "trail", false, |r, x| r.settings.trail.keep_closed_at = x),
-    Numeric("look_first_at", "trail", false, |r, x| r.settings.trail.look_first_at = x),
-    Numeric("warn_at", "trail", false, |r, x| r.settings.trail.warn_at = x),
-    Numeric("vulnerability", "trail", false, |r, x| r.settings.trail.vulnerability = x),
-    Numeric("walking_speed_m_s", "trail", false, |r, x| r.settings.trail.walking_speed_m_s = x),
-    Numeric("person_width_m", "trail", false, |r, x| r.settings.trail.person_width_m = x),
-    Numeric("review_days", "trail", false, |r, x| r.settings.trail.review_days = x),
-];
-
-/// Names that are not numbers.
-const OTHER: [&str; 13] = [
-    "burn",
-    "boulders",
-    "trails",
-    "terrain",
-    "out",
-    "seed",
-    "format",
-    "strict",
-    "quiet",
-    "json_log",
-    "as_of",
-    "unknown_rock",
-    "rocks",
-];
 
 /// Reads a settings file.
 ///
@@ -245,6 +198,20 @@ impl Reader<'_> {
             }
             return;
         }
+        if matches!(subject, "" | "rockfall") {
+            let rockfall = &mut run.settings.rockfall;
+            if let Some((name, set)) = TRIANGULAR.iter().find(|t| t.0 == word) {
+                if let Some(triangle) = self.triangle(name, name, value) {
+                    set(rockfall, triangle);
+                }
+                return;
+            }
+            match word {
+                "friction_deg" => return self.friction(rockfall, value),
+                "support_loss" => return self.support_loss(rockfall, value),
+                _ => {}
+            }
+        }
         match (subject, word) {
             ("", "burn") => run.burn = self.path(word, value),
             ("", "boulders") => run.boulders = self.path(word, value),
@@ -292,6 +259,25 @@ impl Reader<'_> {
                 };
                 let at = (key.span(), "no known setting".to_owned());
                 self.refuse("setting_unknown", &show(&shown), at, "a setting of docs/inputs.md", &remedy);
+            }
+        }
+    }
+
+    /// Friction by contact: `{ burnt_duff = [20, 27, 34] }`.
+    fn friction(&mut self, rockfall: &mut RockfallSettings, value: &Spanned<DeValue<'_>>) {
+        for (contact, value) in self.by_word("friction_deg", value, Contact::parse, Contact::ALL, Contact::word) {
+            if let Some(triangle) = self.triangle(&format!("friction_deg.{}", contact.word()), "friction_deg", value) {
+                rockfall.friction_deg[contact as usize] = triangle;
+            }
+        }
+    }
+
+    /// Chance of losing a support by its state: `{ charred = 0.5 }`.
+    fn support_loss(&mut self, rockfall: &mut RockfallSettings, value: &Spanned<DeValue<'_>>) {
+        for (support, value) in self.by_word("support_loss", value, Support::parse, Support::ALL, Support::word) {
+            let label = format!("support_loss.{}", support.word());
+            if let Some(chance) = self.number(&label, value, (0.0, 1.0), "0 to 1") {
+                rockfall.support_loss[support as usize] = chance;
             }
         }
     }
