@@ -364,7 +364,12 @@ fn every_hostile_file_meets_every_reader_without_a_panic() {
 fn codes_in_source() -> std::collections::BTreeSet<String> {
     let mut codes = std::collections::BTreeSet::new();
     for entry in std::fs::read_dir(concat!(env!("CARGO_MANIFEST_DIR"), "/src/input")).unwrap() {
-        let text = std::fs::read_to_string(entry.unwrap().path()).unwrap();
+        let path = entry.unwrap().path();
+        // Rasters and series are inputs with documents of their own.
+        if path.ends_with("terrain.rs") || path.ends_with("series.rs") {
+            continue;
+        }
+        let text = std::fs::read_to_string(path).unwrap();
         let text: String = text.split("#[cfg(test)]").next().unwrap().split_whitespace().collect::<Vec<_>>().join(" ");
         let starts = [
             "Severity::Refusal, ",
