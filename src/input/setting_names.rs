@@ -56,12 +56,15 @@ pub(super) const NUMERIC: &[Numeric] = &[
     Numeric("passages_per_day_assumed", "trail", false, |r, x| r.settings.trail.passages_per_day_assumed = x),
 ];
 
-/// Settings of the subject `rockfall` that are triangular: lower end, mode and upper end, and where they go.
-pub(super) const TRIANGULAR: &[(&str, fn(&mut RockfallSettings, Distribution))] = &[
-    ("uplift_share", |r, d| r.uplift_share = d),
-    ("boulder_face_share", |r, d| r.boulder_face_share = d),
-    ("outcrop_face_share", |r, d| r.outcrop_face_share = d),
-    ("severe_ground_factor", |r, d| r.severe_ground_factor = d),
+/// A setting of the subject `rockfall` that is triangular (lower end, mode, upper end), and where it goes.
+pub(super) struct Triangular(pub(super) &'static str, pub(super) fn(&mut RockfallSettings, Distribution));
+
+/// Every triangular setting.
+pub(super) const TRIANGULAR: &[Triangular] = &[
+    Triangular("uplift_share", |r, d| r.uplift_share = d),
+    Triangular("boulder_face_share", |r, d| r.boulder_face_share = d),
+    Triangular("outcrop_face_share", |r, d| r.outcrop_face_share = d),
+    Triangular("severe_ground_factor", |r, d| r.severe_ground_factor = d),
 ];
 
 /// Names that are not numbers.

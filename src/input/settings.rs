@@ -14,7 +14,7 @@ use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
 use super::columns::{fold, nearest};
-use super::setting_names::{NUMERIC, Numeric, OTHER, SUBJECTS, TRIANGULAR};
+use super::setting_names::{NUMERIC, Numeric, OTHER, SUBJECTS, TRIANGULAR, Triangular};
 use super::setting_values::{Reader, line_of};
 use super::values::{iso_day, show};
 use super::{InputError, InputFile, foreign_bytes, open, reading_error, user_rocks};
@@ -200,7 +200,7 @@ impl Reader<'_> {
         }
         if matches!(subject, "" | "rockfall") {
             let rockfall = &mut run.settings.rockfall;
-            if let Some((name, set)) = TRIANGULAR.iter().find(|t| t.0 == word) {
+            if let Some(Triangular(name, set)) = TRIANGULAR.iter().find(|t| t.0 == word) {
                 if let Some(triangle) = self.triangle(name, name, value) {
                     set(rockfall, triangle);
                 }
