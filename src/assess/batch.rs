@@ -39,9 +39,9 @@ pub struct Resolution {
 
 impl Resolution {
     /// The ensemble's resolution; `tests/step_plan.rs` shows the error it leaves on every class.
-    pub const RUN: Resolution = Resolution { nodes: 36, stretch: 5.0, lengths: 6.0, refine: 1 };
+    pub const RUN: Resolution = Resolution { nodes: 38, stretch: 6.0, lengths: 4.5, refine: 1 };
     /// A probe's resolution: errors of a hundredth of the run's.
-    pub const PROBE: Resolution = Resolution { nodes: 360, stretch: 6.0, lengths: 9.0, refine: 10 };
+    pub const PROBE: Resolution = Resolution { nodes: 360, stretch: 7.0, lengths: 7.0, refine: 10 };
 }
 
 /// Which laws stay constant with temperature because the user set the property.
@@ -275,7 +275,7 @@ pub fn run(
 }
 
 /// Decay times that count as heating when the depth of the grid is chosen.
-pub const DECAY_LENGTHS: f64 = 3.0;
+pub const DECAY_LENGTHS: f64 = 10.0;
 
 /// Marches a column from a uniform start.
 pub fn march(

@@ -29,13 +29,18 @@ pub const RESIDUAL_GAS_K: f64 = 450.0 + 273.15;
 pub const RESIDUAL_H_W_M2_K: f64 = 10.0;
 
 /// Steps of each leg. `tests/step_plan.rs` shows the error they leave on every class.
-const GROWTH_STEPS: usize = 8;
-const PLATEAU_STEPS: usize = 14;
-const RESIDUAL_STEPS: usize = 10;
+const GROWTH_STEPS: usize = 10;
+const PLATEAU_STEPS: usize = 24;
+const RESIDUAL_STEPS: usize = 20;
 const DECAY_STEPS_MAX: usize = 44;
+/// Lead of the plateau's steps as a share of the growth time. The residual stage starts with a jump, so its lead is short:
+/// a share of its length, at most so many seconds.
+const PLATEAU_LEAD_SHARE: f64 = 0.4;
+const RESIDUAL_LEAD_SHARE: f64 = 0.01;
+const RESIDUAL_LEAD_MAX_S: f64 = 0.5;
 /// First step of the decay as a share of its time constant, and the growth from step to step.
-const DECAY_FIRST_SHARE: f64 = 0.06;
-const DECAY_FACTOR: f64 = 1.15;
+const DECAY_FIRST_SHARE: f64 = 0.04;
+const DECAY_FACTOR: f64 = 1.18;
 
 /// Level of exchange at a plateau, per draw.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -108,16 +113,22 @@ impl SurfaceForcing for Pulse {
     fn leg(&self, leg: usize) -> Leg {
         match leg {
             GROWTH => Leg { start_s: Lanes::ZERO, end_s: self.growth_s, steps: GROWTH_STEPS, spacing: Spacing::Even },
-            PLATEAU => {
-                Leg { start_s: self.growth_s, end_s: self.flaming_s, steps: PLATEAU_STEPS, spacing: Spacing::Geometric }
-            }
+            PLATEAU => Leg {
+                start_s: self.growth_s,
+                end_s: self.flaming_s,
+                steps: PLATEAU_STEPS,
+                spacing: Spacing::Geometric { lead_s: self.growth_s * PLATEAU_LEAD_SHARE },
+            },
             RESIDUAL => {
                 let none = (0..LANES).all(|l| self.residence_s.0[l] <= self.flaming_s.0[l]);
                 Leg {
                     start_s: self.flaming_s,
                     end_s: self.residence_s,
                     steps: if none { 0 } else { RESIDUAL_STEPS },
-                    spacing: Spacing::Geometric,
+                    spacing: Spacing::Geometric {
+                        lead_s: ((self.residence_s - self.flaming_s) * RESIDUAL_LEAD_SHARE)
+                            .min(Lanes::splat(RESIDUAL_LEAD_MAX_S)),
+                    },
                 }
             }
             _ => Leg {

@@ -90,8 +90,12 @@ pub struct Leg {
 pub enum Spacing {
     /// All alike.
     Even,
-    /// Each step times the elapsed time by the same factor: t_j = start (end/start)^(j/N). Start above zero.
-    Geometric,
+    /// Each step longer than the last by one factor, as if the leg had begun a `lead` l before its start s:
+    /// t_j = s - l + l ((e - s + l)/l)^(j/N), e its end. The lead is above zero.
+    Geometric {
+        /// Lead, s.
+        lead_s: Lanes,
+    },
     /// t_j = start + (end - start) (j/N)^2: short steps after the joint.
     Squared,
     /// The first step, and the factor from each step to the next; goes on until the observer has seen enough or the
@@ -121,9 +125,9 @@ impl Leg {
     pub fn step_lengths(&self) -> StepLengths {
         let n = self.steps as f64;
         let factor = match self.spacing {
-            Spacing::Geometric => Lanes::from_fn(|l| {
-                let (start, end) = (self.start_s.0[l], self.end_s.0[l]);
-                if end > start { libm::pow(end / start, 1.0 / n) } else { 1.0 }
+            Spacing::Geometric { lead_s } => Lanes::from_fn(|l| {
+                let (lead, whole) = (lead_s.0[l], self.end_s.0[l] - self.start_s.0[l]);
+                if whole > 0.0 { libm::pow((whole + lead) / lead, 1.0 / n) } else { 1.0 }
             }),
             Spacing::Growing { factor, .. } => Lanes::splat(factor),
             Spacing::Even | Spacing::Squared => Lanes::ONE,
@@ -155,8 +159,9 @@ impl Iterator for StepLengths {
         let step = match self.leg.spacing {
             Spacing::Even => whole / n,
             Spacing::Squared => whole * ((2 * self.taken - 1) as f64 / (n * n)),
-            Spacing::Geometric if self.taken == self.leg.steps => self.leg.end_s - self.time_s,
-            Spacing::Geometric => self.time_s * (self.factor - Lanes::ONE),
+            Spacing::Geometric { .. } if self.taken == self.leg.steps => self.leg.end_s - self.time_s,
+            Spacing::Geometric { lead_s } if self.taken == 1 => lead_s * (self.factor - Lanes::ONE),
+            Spacing::Geometric { .. } => self.last_s * self.factor,
             Spacing::Growing { first_s, .. } if self.taken == 1 => first_s,
             Spacing::Growing { .. } => self.last_s * self.factor,
         };
@@ -177,11 +182,12 @@ mod tests {
 
     #[test]
     fn steps_of_a_leg_fill_it() {
-        for spacing in [Spacing::Even, Spacing::Geometric, Spacing::Squared] {
+        for spacing in [Spacing::Even, Spacing::Geometric { lead_s: Lanes::splat(2.0) }, Spacing::Squared] {
             let total: f64 = leg(spacing, 7).step_lengths().map(|d| d.0[3]).sum();
             assert!((total - 30.0).abs() < 1e-12, "{spacing:?}: {total}");
         }
-        let geometric: Vec<f64> = leg(Spacing::Geometric, 4).step_lengths().map(|d| d.0[0]).collect();
+        let geometric: Vec<f64> =
+            leg(Spacing::Geometric { lead_s: Lanes::splat(2.0) }, 4).step_lengths().map(|d| d.0[0]).collect();
         assert!((geometric[1] / geometric[0] - 2.0).abs() < 1e-12);
     }
 

@@ -25,6 +25,12 @@ use crate::numerics::lanes::Lanes;
 /// y = 1 - 1/sqrt 2.
 const GAMMA: f64 = 1.0 - core::f64::consts::FRAC_1_SQRT_2;
 
+/// Largest change of the face within a stage up to which its radiation is followed exactly, K.
+const STAGE_CHANGE_K: f64 = 150.0;
+/// Range in which the resistivity of an inner stage is taken, K.
+const COLDEST_K: f64 = 200.0;
+const HOTTEST_K: f64 = 2000.0;
+
 /// Work arrays of the step, reused from step to step.
 #[derive(Debug, Clone)]
 pub struct Stepper {
@@ -115,11 +121,12 @@ impl Stepper {
         for i in 0..n {
             let (t, s) = material.temperature(content[i] + dt_s * k1[i], hottest[i]);
             stage_t[i] = t;
+            let t = t.max(Lanes::splat(COLDEST_K)).min(Lanes::splat(HOTTEST_K));
             let w = material.resistivity(t, s);
             // The factor of this stage's own temperature: the one from the start of the step would cost an order.
             stage_w[i] = if remembers { w / material.conductivity_factor(t, hottest[i].max(t)) } else { w };
         }
-        let flux_then = then.flux_into(stage_t[0]);
+        let flux_then = stage_flux(then, temperature[0], stage_t[0]);
         net_power(spread, stage_t, stage_w, flux_then, rhs, |_, _| {});
         rhs[0] -= flux_drift;
         for i in (0..n).rev() {
@@ -138,6 +145,18 @@ impl Stepper {
         column.refresh(material);
         dt_s * (entered_1 + entered_2) * 0.5
     }
+}
+
+/// Flux into a face at `stage_k`, from `start_k` at the start of the step.
+///
+/// A face whose exchange has just jumped overshoots in the inner stage of a long step by up to 1/y - 1 times the whole
+/// change. The linear part of that cancels in the result; the curvature of T^4 would not, so it is taken at most
+/// [`STAGE_CHANGE_K`] away. Ordinary steps change less and are not touched.
+#[inline(always)]
+fn stage_flux(then: &Exchange, start_k: Lanes, stage_k: Lanes) -> Lanes {
+    let limit = Lanes::splat(STAGE_CHANGE_K);
+    let near = stage_k.min(start_k + limit).max(start_k - limit);
+    then.flux_into(near) - then.stiffness_w_m2_k(near) * (stage_k - near)
 }
 
 /// F of every node, W/m2 of face, from temperatures and resistivities; shows each conductance to `keep`.
