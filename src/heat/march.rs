@@ -13,7 +13,7 @@ pub struct Moment {
     pub time_s: Lanes,
     /// Length of the step just taken, s, per draw.
     pub step_s: Lanes,
-    /// Net flux into the face now, W/m2.
+    /// Net flux into the face now, W/m2; its mean over the step where the face is tied to a temperature.
     pub flux_w_m2: Lanes,
     /// Heat absorbed since the start, J/m2 of face.
     pub absorbed_j_m2: Lanes,
@@ -51,6 +51,10 @@ pub struct Account {
     /// Per draw: the fire ended early because the absorbed heat reached its limit.
     pub fuel_spent: Lanes,
 }
+
+/// From this coefficient on the face is tied to the gas temperature, W/m2K: a microkelvin of face temperature then weighs
+/// watts, so the flux now would be rounding and the mean over the step is shown.
+const TIED_FROM_W_M2_K: f64 = 1e6;
 
 /// How a history is marched.
 #[derive(Debug, Clone, Copy)]
@@ -111,7 +115,12 @@ impl March {
                 let moment = Moment {
                     time_s,
                     step_s,
-                    flux_w_m2: now.flux_into(column.temperature_k[0]),
+                    flux_w_m2: Lanes::where_greater(
+                        now.h_w_m2_k,
+                        Lanes::splat(TIED_FROM_W_M2_K),
+                        absorbed / step_s,
+                        now.flux_into(column.temperature_k[0]),
+                    ),
                     absorbed_j_m2: account.absorbed_j_m2,
                     leg,
                 };
