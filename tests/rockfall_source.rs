@@ -100,6 +100,27 @@ fn release_table() {
     }
 }
 
+/// `tests/reference/release.py`: plain random draws by NumPy, four million a row, over more kinds of contact and support.
+#[test]
+fn release_agrees_with_plain_random_draws() {
+    let text = std::fs::read_to_string("tests/reference/release.csv").unwrap();
+    let mut reader = csv::ReaderBuilder::new().comment(Some(b'#')).from_reader(text.as_bytes());
+    let settings = RockfallSettings::default();
+    let points = StaticPoints::new(DRAWS, 1, &settings);
+    let mut rows = 0;
+    for row in reader.deserialize::<(f64, String, String, f64, f64, f64, f64, f64, f64)>() {
+        let (slope, contact, support, radius, seat, setback, height, kept, expected) = row.unwrap();
+        let (contact, support) = (Contact::parse(&contact).unwrap(), Support::parse(&support).unwrap());
+        let record = standing(slope, contact, support, seat, setback, height);
+        let summary = assess_source(&inputs(&record, radius), &cool(DRAWS), &points, &settings, 180.0);
+        assert!((summary.kept_share.unwrap() - kept).abs() <= TABLE_TOLERANCE, "{slope} {contact:?} {support:?}");
+        let p = summary.p_release.unwrap();
+        assert!((p - expected).abs() <= TABLE_TOLERANCE, "{slope} {contact:?} {support:?}: {p} against {expected}");
+        rows += 1;
+    }
+    assert_eq!(rows, 9);
+}
+
 #[test]
 fn contradicted_geometry_gets_no_number() {
     let record = standing(58.0, Contact::FineSoil, Support::None, 0.0, 0.1, 0.6);

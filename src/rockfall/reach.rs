@@ -6,8 +6,8 @@
 //! dh     = z_s - d tan a - z_ground,  v = sqrt(2 g dh),  E = m g dh
 //!
 //! mu, s mean and sd of the reach angle; f factor of the ground (1 intact, 1.17 bare, triangular 1/1.17/1.40 severe; P_reach
-//! is averaged over it); s_h sd of the heights; psi bearing, normal about the downslope bearing (sd 10 deg) cut at +-30 and
-//! renormalised; where the bearing is unknown even over +-45 deg about the stretch's nearest point. The maximum along a
+//! is averaged over it); s_h sd of the heights; psi bearing, normal about the downslope bearing (sd 10 deg) cut at +-30 (the
+//! .27 % beyond the cut reach nothing: not renormalised); where the bearing is unknown even over +-45 deg about the stretch's nearest point. The maximum along a
 //! bearing, not the sum: it is the same block. With terrain theta is the least angle on the way ([`super::profile`]).
 //!
 //! Method: in the plane of distance and bearing about the source (geodesic, Karney) a stretch is a chain of straight
@@ -138,7 +138,7 @@ impl ReachAngle {
 /// The bearings a block may take.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub enum Bearings {
-    /// Normal about the fall line, cut and renormalised.
+    /// Normal about the fall line, cut, not renormalised: what lies beyond the cut reaches nothing.
     FallLine {
         /// Downslope bearing, degrees.
         centre_deg: f64,
@@ -176,10 +176,7 @@ impl Bearings {
         let (from, to) = (from_deg.clamp(-limit, limit), to_deg.clamp(-limit, limit));
         match *self {
             Bearings::Even { half_width_deg, .. } => (to - from) / (2.0 * half_width_deg),
-            Bearings::FallLine { sd_deg, cut_deg, .. } => {
-                let within = normal_cdf(cut_deg / sd_deg) - normal_cdf(-cut_deg / sd_deg);
-                (normal_cdf(to / sd_deg) - normal_cdf(from / sd_deg)) / within
-            }
+            Bearings::FallLine { sd_deg, .. } => normal_cdf(to / sd_deg) - normal_cdf(from / sd_deg),
         }
     }
 }
