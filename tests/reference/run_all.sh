@@ -15,6 +15,6 @@ if [ ! -e "$venv/complete" ]; then
 fi
 
 export OPENBLAS_NUM_THREADS=1 OMP_NUM_THREADS=1 PYTHONDONTWRITEBYTECODE=1
-scripts=(conduction_nonlinear series_solutions stress_sphere_fem truncated_moments steam flake_integral)
+scripts=(conduction_nonlinear series_solutions stress_sphere_fem truncated_moments steam flake_integral geodesic raster release)
 printf '%s\n' "${scripts[@]}" | xargs -P 2 -I{} "$venv/bin/python" "$here/{}.py" "$fresh"
 "$venv/bin/python" "$here/compare.py" "$here" "$fresh"
