@@ -8,6 +8,7 @@ pub mod cover;
 pub mod draws;
 pub mod fires;
 pub mod probe;
+pub mod slope;
 pub mod summary;
 pub mod tables;
 
@@ -17,6 +18,7 @@ use crate::ensemble::points::PointSet;
 use crate::flag::Flag;
 use crate::numerics::lanes::LANES;
 use crate::rock::catalogue::Catalogue;
+use crate::rockfall::points::StaticPoints;
 use crate::settings::Settings;
 use crate::site::{Boulder, Burn, Kind, Moisture, RockChoice};
 use crate::stress::sphere::{CAP_FACTOR_SHARE, CAP_FACTOR_SKIN};
@@ -148,6 +150,8 @@ pub struct Model {
     pub tables: Tables,
     mixture: Vec<(usize, f64)>,
     resolution: Resolution,
+    static_points: StaticPoints,
+    fire_coordinates: Vec<f64>,
 }
 
 /// A mixture that names a rock which the catalogue does not have.
@@ -170,7 +174,16 @@ impl Model {
                 tables.rock_index(key).map(|i| (i, *share)).ok_or_else(|| UnknownMixtureRock(key.clone()))
             })
             .collect::<Result<_, _>>()?;
-        Ok(Model { settings, catalogue, points, tables, mixture, resolution: Resolution::RUN })
+        Ok(Model {
+            static_points: StaticPoints::new(points.draws(), settings.seed, &settings.rockfall),
+            fire_coordinates: slope::fire_coordinates(&points),
+            settings,
+            catalogue,
+            points,
+            tables,
+            mixture,
+            resolution: Resolution::RUN,
+        })
     }
 
     /// The same model at another resolution, for convergence tables.

@@ -4,7 +4,6 @@ mod cli;
 
 use clap::Parser;
 use cli::args::{Cli, Command};
-use cli::exit::Exit;
 use cli::messages::Messages;
 
 fn main() {
@@ -17,11 +16,11 @@ fn main() {
     };
     let messages = Messages { quiet, json };
     let ended = match &cli.command {
-        Command::Assess(_) => Ok(Exit::Done),
+        Command::Assess(args) => cli::assess::run(args),
         Command::Check(args) => cli::check::run(args),
         Command::Probe(args) => cli::probe::run(args, &messages),
         Command::Rocks(args) => cli::rocks::run(args),
-        Command::Demo(_) => Ok(Exit::Done),
+        Command::Demo(args) => cli::demo::run(args),
     };
     let exit = ended.unwrap_or_else(|stop| stop.end(&messages));
     std::process::exit(exit as i32);

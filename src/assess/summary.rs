@@ -35,6 +35,8 @@ pub struct DrawSummary {
     pub plate_breadth: f64,
     /// Heated share of the boulder.
     pub heated_share: f64,
+    /// Half-width of the heated patch, m.
+    pub patch_m: f64,
 }
 
 impl DrawSummary {
@@ -71,6 +73,7 @@ impl DrawSummary {
         // A later, smaller patch (a log) counts by its share of the first face.
         let weight = if self.heated_share > 0.0 { (draw.heated_share / self.heated_share).min(1.0) } else { 1.0 };
         self.heated_share = self.heated_share.max(draw.heated_share);
+        self.patch_m = self.patch_m.max(draw.patch_m);
         self.loss_m += loss * weight;
     }
 

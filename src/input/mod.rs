@@ -264,3 +264,17 @@ fn nothing_inside(name: &str, what: &str) -> Diagnostic {
         .expected(format!("at least one {what}"))
         .remedy("check the export if that is not what you meant")
 }
+
+/// Length and SHA-256 of a file that is not text.
+///
+/// # Errors
+/// When it cannot be read.
+pub fn hashed(path: &Path) -> Result<InputFile, InputError> {
+    use sha2::{Digest as _, Sha256};
+    let name = path.display().to_string();
+    let mut hasher = Sha256::new();
+    let copied = File::open(path).and_then(|mut file| io::copy(&mut file, &mut hasher));
+    let bytes = copied.map_err(|e| reading_error(&name, &e))?;
+    let sha256 = hasher.finalize().iter().map(|b| format!("{b:02x}")).collect();
+    Ok(InputFile { name, bytes, sha256 })
+}

@@ -21,6 +21,7 @@ use serde_json::value::RawValue;
 use super::burns::{BURN_FIELDS, BurnResult};
 use super::cautions;
 use super::fields::{BOULDER_FIELDS, BoulderResult, Field};
+use super::trails::{SegmentRow, TRAIL_FIELDS};
 use crate::input::Properties;
 
 /// What a layer says about itself.
@@ -77,6 +78,26 @@ pub fn write_burns<'r>(
         let geometry = area(&result.burn.area);
         let (id, properties) = (result.feature_id.as_deref(), &result.properties);
         feature(out, id, Some(&geometry), properties, BURN_FIELDS, result, Breaks::Kept)
+    })
+}
+
+/// Writes `trails.geojson`, in the order given.
+///
+/// # Errors
+/// Those of the writer.
+pub fn write_trails<'r>(
+    out: &mut dyn Write,
+    head: &LayerHead,
+    rows: impl IntoIterator<Item = &'r SegmentRow>,
+) -> io::Result<()> {
+    let nothing = Properties::from_pairs([]);
+    layer(out, head, "trails", rows, |out, row| {
+        let line = |p: &crate::site::Position| match p.height_m {
+            Some(height) => Position::from([p.lon_deg, p.lat_deg, height]),
+            None => Position::from([p.lon_deg, p.lat_deg]),
+        };
+        let geometry = GeometryValue::LineString { coordinates: row.segment.points.iter().map(line).collect() };
+        feature(out, None, Some(&geometry), &nothing, TRAIL_FIELDS, row, Breaks::Kept)
     })
 }
 

@@ -23,10 +23,12 @@ pub mod message;
 pub mod probe_table;
 pub mod rock_table;
 pub mod run_record;
+pub mod trails;
 
 pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, burn_results, summarise_burns};
 pub use directory::{Committed, OutputDirectory, OutputError, WrittenFile};
 pub use fields::{BOULDER_FIELDS, BoulderResult, SourceColumns};
-pub use geojson::{LayerHead, write_boulder_line, write_boulders, write_burns};
+pub use geojson::{LayerHead, write_boulder_line, write_boulders, write_burns, write_trails};
 pub use inspection::{assign_ranks, inspection_order, write_inspection};
 pub use run_record::{InputRecord, OptionsRecord, RunCounts, RunRecord};
+pub use trails::{SegmentRow, TRAIL_FIELDS};

@@ -314,6 +314,23 @@ mirror! {
         reach_sd_deg: f64,
         bearing_sd_deg: f64,
         bearing_cut_deg: f64,
+        unknown_bearing_deg: f64,
+        friction_deg: DistributionRecords,
+        support_loss: [f64; 5],
+        uplift_share: DistributionRecord,
+        slope_sd_deg: f64,
+        raster_slope_sd_deg: f64,
+        geometry_rel_sd: f64,
+        seat_sd_m: f64,
+        seat_rel_sd: f64,
+        kept_share_min: f64,
+        boulder_face_share: DistributionRecord,
+        outcrop_face_share: DistributionRecord,
+        bare_ground_factor: f64,
+        severe_ground_factor: DistributionRecord,
+        height_sd_m: f64,
+        height_tolerance_m: f64,
+        unknown_height_reach_m: f64,
     }
 }
 mirror! {
@@ -326,6 +343,10 @@ mirror! {
         vulnerability: f64,
         walking_speed_m_s: f64,
         person_width_m: f64,
+        in_reach_share: f64,
+        burnt_through_share: f64,
+        looked_at_m: f64,
+        passages_per_day_assumed: f64,
         review_days: f64,
         as_of: DayRecord,
     }
@@ -371,27 +392,57 @@ pub struct FigureRecord {
     pub property: &'static str,
     /// Its SI unit.
     pub unit: &'static str,
+    /// Its distribution.
+    #[serde(flatten)]
+    pub distribution: DistributionRecord,
+}
+
+impl FigureRecord {
+    fn of((property, distribution): &(Property, Distribution)) -> Self {
+        FigureRecord { property: property.key(), unit: property.unit(), distribution: (*distribution).into() }
+    }
+}
+
+/// A distribution.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+pub struct DistributionRecord {
     /// `lognormal`, `normal` or `triangular`.
     pub distribution: &'static str,
     /// Median, mean or mode.
     pub centre: f64,
     /// Standard deviation of ln x (lognormal) or of x (normal); 0 for a triangular figure.
     pub spread: f64,
-    /// Lower end.
-    pub lower: f64,
+    /// Lower end; null when there is none.
+    pub lower: Option<f64>,
     /// Upper end; null when there is none.
     pub upper: Option<f64>,
 }
 
-impl FigureRecord {
-    fn of((property, distribution): &(Property, Distribution)) -> Self {
-        let Distribution { shape, centre, spread, lower, upper } = *distribution;
-        let distribution = match shape {
+impl From<Distribution> for DistributionRecord {
+    fn from(d: Distribution) -> Self {
+        let distribution = match d.shape {
             Shape::Lognormal => "lognormal",
             Shape::Normal => "normal",
             Shape::Triangular => "triangular",
         };
-        let upper = upper.is_finite().then_some(upper);
-        FigureRecord { property: property.key(), unit: property.unit(), distribution, centre, spread, lower, upper }
+        let finite = |x: f64| x.is_finite().then_some(x);
+        DistributionRecord {
+            distribution,
+            centre: d.centre,
+            spread: d.spread,
+            lower: finite(d.lower),
+            upper: finite(d.upper),
+        }
+    }
+}
+
+/// Several distributions, in the order of the words they belong to.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(transparent)]
+pub struct DistributionRecords(Vec<DistributionRecord>);
+
+impl<const N: usize> From<[Distribution; N]> for DistributionRecords {
+    fn from(all: [Distribution; N]) -> Self {
+        DistributionRecords(all.into_iter().map(Into::into).collect())
     }
 }

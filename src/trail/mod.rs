@@ -11,3 +11,4 @@ pub mod judge;
 pub mod passage;
 pub mod proposal;
 pub mod segments;
+pub mod survey;

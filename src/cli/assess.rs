@@ -1,0 +1,486 @@
+//! `assess`: reads, runs the boulders over the threads, writes.
+
+use std::collections::BTreeSet;
+use std::io::Write;
+use std::ops::ControlFlow;
+use std::time::Instant;
+
+use indicatif::{ProgressBar, ProgressStyle};
+use jiff::ToSpan;
+use jiff::civil::Date;
+use rayon::prelude::*;
+
+use spallcast::assess::cover::{Burned, Cover};
+use spallcast::assess::{Assessment, Model};
+use spallcast::diagnostic::{Diagnostic, Severity};
+use spallcast::flag::Flag;
+use spallcast::input::burns::Burns;
+use spallcast::input::terrain::read_terrain;
+use spallcast::input::{
+    BoulderFeature, Duplicates, STANDARD_INPUT, read_boulders, read_boulders_from, read_burns, read_trails,
+    refuse_duplicates,
+};
+use spallcast::output::burns::burn_results;
+use spallcast::output::{
+    BoulderResult, LayerHead, OptionsRecord, OutputDirectory, RunCounts, RunRecord, SegmentRow, SourceColumns,
+    write_boulder_line, write_boulders, write_burns, write_inspection, write_trails,
+};
+use spallcast::rock::catalogue::Catalogue;
+use spallcast::rockfall::place::{Placed, doubtful_heights, place};
+use spallcast::rockfall::source::SourceSummary;
+use spallcast::rockfall::terrain::Terrain;
+use spallcast::settings::Settings;
+use spallcast::site::{Boulder, Burn, Trail};
+use spallcast::trail::judge::Judged;
+use spallcast::trail::survey::{Survey, Surveyed, survey};
+
+use super::args::AssessArgs;
+use super::exit::{Exit, Stop};
+use super::messages::Messages;
+use super::plan::{Plan, Source, Target};
+use super::summary;
+
+/// Boulders that are read before they are run, in a stream: enough to keep the threads busy, few enough to hold.
+const STREAM_CHUNK: usize = 1024;
+
+/// Runs the main job.
+pub fn run(args: &AssessArgs) -> Result<Exit, Stop> {
+    run_plan(Plan::assess(args)?)
+}
+
+/// Runs a checked plan.
+pub fn run_plan(plan: Plan) -> Result<Exit, Stop> {
+    let messages = Messages { quiet: plan.quiet, json: plan.json_log };
+    if let Some(threads) = plan.threads {
+        // A pool that is already there (a second run in one process) keeps its size.
+        let _ = rayon::ThreadPoolBuilder::new().num_threads(threads).build_global();
+    }
+    match plan.out.clone() {
+        Some(Target::Stream) => stream(plan, &messages),
+        Some(Target::Folder(folder)) => Job::read(plan, &messages)?.finish(&folder, &messages),
+        None => unreachable!("a plan of assess has a target"),
+    }
+}
+
+/// What is the same for every boulder of a run.
+struct Shared<'a> {
+    model: &'a Model,
+    burns: &'a [Burn],
+    burned: Burned<'a>,
+    terrain: Option<&'a Terrain>,
+}
+
+/// One boulder, run.
+struct Worked {
+    feature: BoulderFeature,
+    assessment: Assessment,
+    source: Option<SourceSummary>,
+    placed: Option<Placed>,
+    within: Vec<usize>,
+}
+
+impl Shared<'_> {
+    fn work(&self, feature: BoulderFeature) -> Worked {
+        let boulder = match &feature.boulder {
+            Ok(boulder) => boulder,
+            Err(finding) => {
+                let assessment = Assessment::not_assessed(finding.sentence());
+                return Worked { feature, assessment, source: None, placed: None, within: Vec::new() };
+            }
+        };
+        let covers = self.burned.at(&boulder.position);
+        let covering: Vec<&Burn> = covers.iter().map(|(b, _)| *b).collect();
+        let within =
+            covering.iter().filter_map(|burn| self.burns.iter().position(|b| std::ptr::eq(b, *burn))).collect();
+        let placed = place(boulder, self.terrain, &self.model.settings.rockfall);
+        let (mut assessment, draws) = self.model.assess_with_draws(boulder, &covering);
+        if covers.iter().any(|(_, cover)| *cover == Cover::Edge) {
+            assessment.flags.insert(Flag::OnBurnEdge);
+        }
+        if feature.remarks.iter().any(|r| r.severity == Severity::Warning) {
+            assessment.flags.insert(Flag::ValueSuspicious);
+        }
+        if feature.remarks.iter().any(|r| r.code == "number_as_text") {
+            assessment.flags.insert(Flag::NumberAsText);
+        }
+        let source = (!draws.is_empty()).then(|| self.model.source(boulder, &placed, &draws));
+        Worked { assessment, source, placed: Some(placed), within, feature }
+    }
+}
+
+/// The columns of a source. Flags of the place go with it where there is a source at all.
+fn source_columns(worked: &Worked) -> SourceColumns {
+    let Some(source) = &worked.source else { return SourceColumns::default() };
+    let mut flags = source.flags.clone();
+    flags.extend(worked.placed.iter().flat_map(|p| p.flags.iter().copied()));
+    SourceColumns {
+        p_source: source.p_source,
+        p_source_low: source.p_source_low,
+        p_source_high: source.p_source_high,
+        p_release: source.p_release,
+        p_fragment: source.p_fragment,
+        mode: source.main_mode().map(|m| m.word()),
+        basis: source.basis.word(),
+        fragment_m3_p50: source.fragment_m3_p50,
+        reason: Some(source.sentence()),
+        flags,
+    }
+}
+
+/// Inputs read and boulders run, before anything is written.
+struct Job {
+    plan: Plan,
+    record: RunRecord,
+    burns: Burns,
+    trails: Vec<Trail>,
+    terrain: Option<Terrain>,
+    worked: Vec<Worked>,
+    as_of: Date,
+    directory: OutputDirectory,
+    clock: Instant,
+}
+
+impl Job {
+    fn read(plan: Plan, messages: &Messages) -> Result<Job, Stop> {
+        let clock = Instant::now();
+        let mut record = RunRecord::new(&plan.settings);
+        record.started_at = Some(jiff::Timestamp::now().to_string());
+        record.options = options(&plan);
+        let as_of = day_of_run(&plan.settings);
+        let mut findings = plan.findings.clone();
+        if let Some(file) = &plan.settings_file {
+            record.input("settings", file, None);
+        }
+
+        let burns = read_burns(&plan.burn)?;
+        record.input("burn", &burns.file, Some(burns.burns.len() as u64));
+        findings.extend(burns.findings.iter().cloned());
+        let mut trails = Vec::new();
+        if let Some(path) = &plan.trails {
+            let read = read_trails(path)?;
+            record.input("trails", &read.file, Some(read.trails.len() as u64));
+            findings.extend(read.findings);
+            trails = read.trails;
+        }
+        let mut terrain = None;
+        if let Some(path) = &plan.terrain {
+            let read = read_terrain(path).map_err(|e| Stop::Failed(e.to_string()))?;
+            findings.extend(read.findings);
+            record.input("terrain", &spallcast::input::hashed(path)?, None);
+            terrain = Some(read.terrain);
+        }
+        let mut features: Vec<BoulderFeature> = Vec::new();
+        let sink = |feature| {
+            features.push(feature);
+            ControlFlow::Continue(())
+        };
+        let (read, name) = read_inventory(&plan.boulders, &plan.catalogue, Duplicates::LeaveToCaller, sink)?;
+        refuse_duplicates(&mut features, &name);
+        doubt_heights(&mut features, &name);
+        record.input("boulders", &read.file, Some(read.records as u64));
+        findings.extend(read.findings);
+        for feature in &features {
+            findings.extend(feature.remarks.iter().cloned());
+            findings.extend(feature.boulder.as_ref().err().cloned());
+        }
+        record.findings(&findings);
+        record.timing("reading", clock.elapsed().as_secs_f64());
+
+        // The folder is tried before the long part.
+        let inputs: Vec<&std::path::Path> = [Some(&plan.burn), plan.trails.as_ref(), plan.terrain.as_ref()]
+            .into_iter()
+            .flatten()
+            .map(|p| p.as_path())
+            .chain(match &plan.boulders {
+                Source::File(path) => Some(path.as_path()),
+                Source::Stream => None,
+            })
+            .collect();
+        let Some(Target::Folder(folder)) = &plan.out else { unreachable!("a job writes into a folder") };
+        let directory = OutputDirectory::prepare(folder, &inputs).map_err(|e| Stop::Failed(e.to_string()))?;
+        messages.findings(&findings);
+
+        let clock_run = Instant::now();
+        let model =
+            Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
+        let shared =
+            Shared { model: &model, burns: &burns.burns, burned: Burned::new(&burns.burns), terrain: terrain.as_ref() };
+        let bar = progress(features.len() as u64, messages);
+        let worked: Vec<Worked> = features
+            .into_par_iter()
+            .map(|feature| {
+                let worked = shared.work(feature);
+                bar.inc(1);
+                worked
+            })
+            .collect();
+        bar.finish_and_clear();
+        drop(shared);
+        record.timing("boulders", clock_run.elapsed().as_secs_f64());
+        Ok(Job { plan, record, burns, trails, terrain, worked, as_of, directory, clock })
+    }
+
+    /// Surveys the trails, ranks, writes and sums up.
+    fn finish(self, folder: &std::path::Path, messages: &Messages) -> Result<Exit, Stop> {
+        let Job { plan, mut record, burns, trails, terrain, worked, as_of, mut directory, clock } = self;
+        let settings = &plan.settings;
+        let clock_trails = Instant::now();
+        let known: Vec<usize> = (0..worked.len()).filter(|i| worked[*i].feature.boulder.is_ok()).collect();
+        let surveyed: Vec<Surveyed> = known.iter().map(|i| surveyed(&worked[*i], &burns.burns)).collect();
+        let survey = survey(&trails, &surveyed, terrain.as_ref(), settings, as_of);
+        drop(surveyed);
+        record.timing("trails", clock_trails.elapsed().as_secs_f64());
+        if survey.doubtful_trail_heights > 0 {
+            record.findings([&trail_height_finding(&plan, survey.doubtful_trail_heights)]);
+        }
+
+        let mut results: Vec<BoulderResult> = worked
+            .into_iter()
+            .map(|worked| {
+                let source = source_columns(&worked);
+                let mut result = BoulderResult::new(worked.feature, worked.assessment, settings.horizon_days);
+                result.within = worked.within;
+                result.source = source;
+                result
+            })
+            .collect();
+        let order = rank(&mut results, &known, &survey);
+        let counts = RunCounts::of(&results);
+        let partly = counts.not_assessed > 0;
+        if plan.strict && partly {
+            return Err(Stop::Failed(format!(
+                "{} of {} boulders could not be assessed, and --strict was asked for; nothing was written. Correct the \
+                 records named above, or leave --strict out",
+                counts.not_assessed, counts.records
+            )));
+        }
+
+        let clock_writing = Instant::now();
+        let valid_until = as_of.saturating_add((settings.trail.review_days.clamp(0.0, 36_500.0) as i64).days());
+        let head = LayerHead {
+            program_version: env!("CARGO_PKG_VERSION"),
+            catalogue_version: Catalogue::VERSION,
+            horizon_days: settings.horizon_days,
+            valid_until: Some(valid_until),
+        };
+        let rows = segment_rows(&survey, &trails);
+        let burn_rows = burn_results(&burns, &results);
+        let mut write = |name: &str, fill: &mut dyn FnMut(&mut dyn Write) -> std::io::Result<()>| {
+            directory.write(name, |out| fill(out)).map_err(|e| Stop::Failed(e.to_string()))
+        };
+        write("boulders.geojson", &mut |out| write_boulders(out, &head, &results))?;
+        write("burns.geojson", &mut |out| write_burns(out, &head, &burn_rows))?;
+        write("inspection.csv", &mut |out| write_inspection(out, &results, &order))?;
+        if plan.trails.is_some() {
+            write("trails.geojson", &mut |out| write_trails(out, &head, &rows))?;
+        }
+        record.valid_until = Some(valid_until.to_string());
+        record.counts = counts;
+        record.timing("writing", clock_writing.elapsed().as_secs_f64());
+        record.timing("all", clock.elapsed().as_secs_f64());
+        record.files = directory.written().to_vec();
+        let text = record.json();
+        directory.write("run.json", |out| out.write_all(text.as_bytes())).map_err(|e| Stop::Failed(e.to_string()))?;
+        let committed = directory.commit().map_err(|e| Stop::Failed(e.to_string()))?;
+        for kept in &committed.kept_edits {
+            messages.say(&format!("kept a copy of an edited result: {kept}"));
+        }
+        for line in summary::lines(&results, &order, &rows, &record, folder, valid_until) {
+            messages.say(&line);
+        }
+        Ok(if partly { Exit::Partly } else { Exit::Done })
+    }
+}
+
+/// The inventory from wherever it comes.
+fn read_inventory(
+    source: &Source,
+    catalogue: &Catalogue,
+    duplicates: Duplicates,
+    sink: impl FnMut(BoulderFeature) -> ControlFlow<()>,
+) -> Result<(spallcast::input::boulders::Summary, String), Stop> {
+    Ok(match source {
+        Source::File(path) => (read_boulders(path, catalogue, duplicates, sink)?, path.display().to_string()),
+        Source::Stream => {
+            let stdin = std::io::stdin();
+            (read_boulders_from(stdin, STANDARD_INPUT, catalogue, duplicates, sink)?, STANDARD_INPUT.to_owned())
+        }
+    })
+}
+
+/// Boulders in, boulders out, one line each, in constant memory.
+fn stream(plan: Plan, messages: &Messages) -> Result<Exit, Stop> {
+    if plan.trails.is_some() {
+        return Err(Stop::Usage(
+            "--out - writes boulders only; name a folder to get trails, which need all boulders at once".to_owned(),
+        ));
+    }
+    if plan.strict {
+        return Err(Stop::Usage(
+            "--strict needs a folder for --out: a stream cannot take back what it wrote".to_owned(),
+        ));
+    }
+    let burns = read_burns(&plan.burn)?;
+    messages.findings(plan.findings.iter().chain(&burns.findings));
+    let terrain = plan
+        .terrain
+        .as_ref()
+        .map(|path| read_terrain(path).map_err(|e| Stop::Failed(e.to_string())))
+        .transpose()?
+        .map(|read| read.terrain);
+    let model = Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
+    let shared =
+        Shared { model: &model, burns: &burns.burns, burned: Burned::new(&burns.burns), terrain: terrain.as_ref() };
+    let mut out = std::io::BufWriter::new(std::io::stdout().lock());
+    let mut chunk: Vec<BoulderFeature> = Vec::with_capacity(STREAM_CHUNK);
+    let mut counts = RunCounts::default();
+    let mut stopped: Option<std::io::Error> = None;
+    let mut run_chunk = |chunk: &mut Vec<BoulderFeature>| -> std::io::Result<()> {
+        let worked: Vec<Worked> = std::mem::take(chunk).into_par_iter().map(|f| shared.work(f)).collect();
+        for worked in worked {
+            messages.findings(worked.feature.remarks.iter().chain(worked.feature.boulder.as_ref().err()));
+            let source = source_columns(&worked);
+            let mut result = BoulderResult::new(worked.feature, worked.assessment, plan.settings.horizon_days);
+            result.source = source;
+            counts.add(&result);
+            write_boulder_line(&mut out, &result)?;
+        }
+        out.flush()
+    };
+    let read = read_inventory(&plan.boulders, &plan.catalogue, Duplicates::RefuseLater, |feature| {
+        chunk.push(feature);
+        if chunk.len() == STREAM_CHUNK
+            && let Err(error) = run_chunk(&mut chunk)
+        {
+            stopped = Some(error);
+            return ControlFlow::Break(());
+        }
+        ControlFlow::Continue(())
+    });
+    if let Some(error) = stopped {
+        return Err(error.into());
+    }
+    run_chunk(&mut chunk)?;
+    let (summary, _) = read?;
+    messages.findings(&summary.findings);
+    messages.say(&format!("{} boulders, {} assessed, {} not", counts.records, counts.assessed, counts.not_assessed));
+    Ok(if counts.not_assessed > 0 { Exit::Partly } else { Exit::Done })
+}
+
+fn surveyed<'a>(worked: &'a Worked, burns: &[Burn]) -> Surveyed<'a> {
+    let boulder: &Boulder = worked.feature.boulder.as_ref().expect("only boulders that could be read are surveyed");
+    let not_assessed = worked.source.is_none().then_some(worked.assessment.reason.as_str());
+    Surveyed {
+        judged: Judged {
+            boulder,
+            placed: worked.placed.as_ref().expect("a boulder that could be read has a place"),
+            source: worked.source.as_ref(),
+            not_assessed,
+        },
+        // The barest ground that any covering burn reports.
+        ground: worked.within.iter().filter_map(|b| burns[*b].ground_after).max(),
+    }
+}
+
+/// Gives every record its rank: those that could be read by the survey, the others as if anything were possible.
+fn rank(results: &mut [BoulderResult], known: &[usize], survey: &Survey) -> Vec<usize> {
+    let mut order: Vec<usize> = Vec::with_capacity(results.len());
+    let mut by_rank: Vec<usize> = known.to_vec();
+    let rank_of: std::collections::HashMap<usize, usize> =
+        known.iter().copied().zip(survey.ranks.iter().copied()).collect();
+    by_rank.sort_by_key(|i| rank_of[i]);
+    let known_set: BTreeSet<usize> = known.iter().copied().collect();
+    let mut unread: Vec<usize> = (0..results.len()).filter(|i| !known_set.contains(i)).collect();
+    unread.sort_by(|a, b| results[*a].id().cmp(results[*b].id()).then(a.cmp(b)));
+    // A record that could not be read may be any boulder of the run: it stands in the middle, never last.
+    let middle = by_rank.len() / 2;
+    order.extend(&by_rank[..middle]);
+    order.extend(unread);
+    order.extend(&by_rank[middle..]);
+    for (rank, index) in (1..).zip(&order) {
+        results[*index].inspection_rank = Some(rank);
+    }
+    order
+}
+
+fn segment_rows(survey: &Survey, trails: &[Trail]) -> Vec<SegmentRow> {
+    survey
+        .segments
+        .iter()
+        .zip(&survey.results)
+        .map(|(segment, result)| {
+            let trail = &trails[segment.trail];
+            SegmentRow {
+                trail_id: trail.id.clone(),
+                name: trail.name.clone(),
+                segment: segment.clone(),
+                result: result.clone(),
+            }
+        })
+        .collect()
+}
+
+/// Flags heights that look wrong beside the others; a doubtful height is not used, so that the raster or nothing takes its
+/// place.
+fn doubt_heights(features: &mut [BoulderFeature], file: &str) {
+    let heights: Vec<Option<f64>> =
+        features.iter().map(|f| f.boulder.as_ref().ok().and_then(|b| b.position.height_m)).collect();
+    for (feature, doubtful) in features.iter_mut().zip(doubtful_heights(&heights)) {
+        let Ok(boulder) = &mut feature.boulder else { continue };
+        if doubtful && let Some(height) = boulder.position.height_m.take() {
+            feature.remarks.push(
+                Diagnostic::new(Severity::Warning, "height_unusual", file)
+                    .about("boulder", Some(&boulder.id))
+                    .property("elevation_m", height.to_string())
+                    .expected("metres, like its neighbours")
+                    .remedy("correct it; feet or a zero are the likely cause. It was not used"),
+            );
+        }
+    }
+}
+
+fn trail_height_finding(plan: &Plan, count: usize) -> Diagnostic {
+    let file = plan.trails.as_ref().map(|p| p.display().to_string()).unwrap_or_default();
+    Diagnostic::new(Severity::Warning, "height_unusual", file)
+        .about("trail", None)
+        .found(format!("{count} vertices differ from the raster's height by more than the tolerance"))
+        .expected("heights in metres above the raster's datum")
+        .remedy("check the trail's heights; the raster's were used")
+}
+
+fn day_of_run(settings: &Settings) -> Date {
+    settings.trail.as_of.unwrap_or_else(|| jiff::Zoned::now().date())
+}
+
+fn options(plan: &Plan) -> OptionsRecord {
+    let text = |p: &std::path::Path| p.display().to_string();
+    OptionsRecord {
+        burn: Some(text(&plan.burn)),
+        boulders: Some(match &plan.boulders {
+            Source::File(path) => text(path),
+            Source::Stream => "-".to_owned(),
+        }),
+        trails: plan.trails.as_deref().map(text),
+        terrain: plan.terrain.as_deref().map(text),
+        settings: plan.settings_file.as_ref().map(|f| f.name.clone()),
+        out: match &plan.out {
+            Some(Target::Folder(folder)) => Some(text(folder)),
+            Some(Target::Stream) => Some("-".to_owned()),
+            None => None,
+        },
+        threads: plan.threads,
+        format: plan.formats.clone(),
+        strict: plan.strict,
+        quiet: plan.quiet,
+        json_log: plan.json_log,
+    }
+}
+
+fn progress(length: u64, messages: &Messages) -> ProgressBar {
+    if messages.quiet || messages.json {
+        return ProgressBar::hidden();
+    }
+    // Silent without a terminal.
+    let style = "{bar:40} {pos}/{len} boulders, {per_sec}, {eta} left";
+    ProgressBar::new(length).with_style(ProgressStyle::with_template(style).expect("the template is well formed"))
+}
