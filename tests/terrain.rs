@@ -37,7 +37,7 @@ fn heights_agree_with_rasterio() {
         }
         rows += 1;
     }
-    assert_eq!(rows, 6 * 16);
+    assert_eq!(rows, 8 * 16);
     assert!(gaps >= 4, "the gaps were not sampled: {gaps}");
 }
 

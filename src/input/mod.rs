@@ -28,6 +28,7 @@ mod setting_names;
 mod setting_values;
 pub mod settings;
 pub mod terrain;
+mod terrain_lzw;
 mod text;
 pub mod trails;
 mod user_rocks;

@@ -12,6 +12,7 @@ use std::path::Path;
 use tiff::decoder::{Decoder, DecodingResult, Limits};
 use tiff::tags::Tag;
 
+use super::terrain_lzw;
 use crate::diagnostic::{Diagnostic, Severity};
 use crate::rockfall::terrain::{CellFrame, Terrain, TerrainCrs, TerrainError};
 
@@ -148,8 +149,13 @@ pub fn read_terrain(path: &Path) -> Result<TerrainFile, TerrainReadError> {
         }
         None => None,
     };
-    let image = decoder.read_image().map_err(decode)?;
-    let Some(heights) = to_heights(image, nodata) else {
+    let compression = decoder.find_tag_unsigned::<u16>(Tag::Compression).map_err(decode)?;
+    let image = if compression == Some(terrain_lzw::LZW) {
+        terrain_lzw::read_cells(&mut decoder).map_err(decode)?.map(DecodingResult::F64)
+    } else {
+        Some(decoder.read_image().map_err(decode)?)
+    };
+    let Some(heights) = image.and_then(|cells| to_heights(cells, nodata)) else {
         return Err(unusable(
             "the cells are neither plain integers nor plain floats".to_owned(),
             "integer or float heights; re-export the raster",

@@ -29,6 +29,10 @@ RASTERS = [
      dict(tiled=True, blockxsize=32, blockysize=16, compress="lzw", predictor=2), NODATA_16, False),
     ("degrees_strips_deflate_float64", 4326, -119.52, 37.72, 1 / 10800, "float64", dict(compress="deflate"), None, False),
     ("degrees_nad83_lzw_int32", 4269, -119.52, 37.72, 1 / 10800, "int32", dict(compress="lzw"), -1, False),
+    ("utm19s_tiles_lzw_float32_big", 32719, 400000, 6200000, 5, "float32",
+     dict(tiled=True, blockxsize=32, blockysize=32, compress="lzw", predictor=3, BIGTIFF="YES", ENDIANNESS="BIG"), -9999.0, False),
+    ("utm11n_strips_lzw_int16_big", 32611, 300000, 4180000, 10, "int16",
+     dict(compress="lzw", predictor=2, ENDIANNESS="BIG"), -9999, False),
     ("utm33n_point_uint16", 32633, 500000, 5200000, 10, "uint16", {}, 0, True),
 ]
 COLUMNS, ROWS = 60, 48
