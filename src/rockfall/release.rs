@@ -206,6 +206,7 @@ fn tally_outcrop(draws: &[SpallDraw], points: &StaticPoints) -> Tally {
     tally
 }
 
+#[expect(clippy::needless_range_loop, reason = "one index into a dozen columns of the points")]
 fn tally_boulder(
     inputs: &StaticsInputs<'_>,
     draws: &[SpallDraw],
