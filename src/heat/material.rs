@@ -173,8 +173,11 @@ impl Material<'_> {
             if hottest_k.0[l] < DRYING_TO_K && v.0[l] < knots[knots.len() - 1].0 {
                 let upper = knots.partition_point(|k| k.0 <= v.0[l]).clamp(1, knots.len() - 1);
                 let ((v0, t0), (v1, t1)) = (knots[upper - 1], knots[upper]);
-                slope.0[l] = (t1 - t0) / (v1 - v0);
-                t.0[l] = t0 + slope.0[l] * (v.0[l] - v0);
+                let moist_slope = (t1 - t0) / (v1 - v0);
+                t.0[l] = t0 + moist_slope * (v.0[l] - v0);
+                // The slope only steers the step, whose order does not depend on it. While water boils off T hardly
+                // moves with v, but a step that leaves the plateau would then run away: never below the dry slope.
+                slope.0[l] = slope.0[l].max(moist_slope);
             }
         }
         (t, slope)
