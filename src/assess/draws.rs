@@ -369,7 +369,8 @@ pub fn fire_part(
     }
     let growth_s = match (fire.flame_length_m, fire.spread_rate_m_s) {
         (Some(length), Some(spread)) => (length / spread).min(flaming_s),
-        _ => Pulse::growth_time_s(residence_s).min(flaming_s),
+        // Of the flaming part: what burns on as residual must not slow the flames, or a longer fire could do less.
+        _ => Pulse::growth_time_s(flaming_s),
     };
     Draw {
         ambient_k,

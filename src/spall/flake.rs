@@ -12,7 +12,7 @@
 //! does shed flakes thinner than its grains, which cleave.
 //!
 //! Quadrature: three Gauss points per cell on the linear interpolant of s; stops where s has fallen to .35 of its
-//! largest value, below which s^m adds less than 3e-4 for m >= 8.
+//! largest value; of an exponential profile that drops 1 % of B at m = 8, .2 % at m = 10 and nothing to speak of from 12 on.
 
 use crate::numerics::lanes::Lanes;
 
