@@ -5,7 +5,8 @@
 //!
 //! Symbols: G plateau irradiance W/m2, Ta ambient K, Tg gas temperature K, tg growth time s, t_r residence s, tau decay
 //! time s. g multiplies (G - sigma Ta^4) and (Tg - Ta), never a flame temperature. Where the residence exceeds the
-//! flaming cap of its class the excess is a residual stage at its own level. The class's convective coefficient lasts
+//! flaming cap of its class the excess is a residual stage: the flames fade onto its own level with the decay time (a drop
+//! at once would take their decay away, and a longer fire would heat less). The class's convective coefficient lasts
 //! through the decay and then gives way to that of still air. Sources: physics and fire pages; shape and decay are judgement.
 
 use crate::heat::boundary::{Exchange, Leg, Spacing, SurfaceForcing};
@@ -33,11 +34,9 @@ const GROWTH_STEPS: usize = 10;
 const PLATEAU_STEPS: usize = 24;
 const RESIDUAL_STEPS: usize = 20;
 const DECAY_STEPS_MAX: usize = 44;
-/// Lead of the plateau's steps as a share of the growth time. The residual stage starts with a jump, so its lead is short:
-/// a share of its length, at most so many seconds.
+/// Lead of the plateau's steps as a share of the growth time, and of the residual stage's as a share of the decay time.
 const PLATEAU_LEAD_SHARE: f64 = 0.4;
-const RESIDUAL_LEAD_SHARE: f64 = 0.01;
-const RESIDUAL_LEAD_MAX_S: f64 = 0.5;
+const RESIDUAL_LEAD_SHARE: f64 = 0.2;
 /// First step of the decay as a share of its time constant, and the growth from step to step.
 const DECAY_FIRST_SHARE: f64 = 0.04;
 const DECAY_FACTOR: f64 = 1.18;
@@ -93,14 +92,15 @@ impl Pulse {
         (GROWTH_SHARE * residence_s).min(GROWTH_MAX_S)
     }
 
-    /// The level that decays: the residual one where there was a residual stage.
-    fn last_level(&self) -> Level {
-        let pick =
-            |residual: Lanes, flaming: Lanes| Lanes::where_greater(self.residence_s, self.flaming_s, residual, flaming);
+    /// The level at `t_s` from the end of flaming on: the residual one and what is left of the flames above it. At the end
+    /// of flaming itself it is the flaming one, so a pulse without a residual stage decays from there.
+    fn level_after_flaming(&self, t_s: Lanes) -> Level {
+        let flames = ((self.flaming_s - t_s) / self.decay_s).map(libm::exp);
+        let fade = |flaming: Lanes, residual: Lanes| residual + flames * (flaming - residual);
         Level {
-            irradiance_w_m2: pick(self.residual.irradiance_w_m2, self.flaming.irradiance_w_m2),
-            gas_k: pick(self.residual.gas_k, self.flaming.gas_k),
-            h_w_m2_k: pick(self.residual.h_w_m2_k, self.flaming.h_w_m2_k),
+            irradiance_w_m2: fade(self.flaming.irradiance_w_m2, self.residual.irradiance_w_m2),
+            gas_k: fade(self.flaming.gas_k, self.residual.gas_k),
+            h_w_m2_k: fade(self.flaming.h_w_m2_k, self.residual.h_w_m2_k),
         }
     }
 }
@@ -125,10 +125,7 @@ impl SurfaceForcing for Pulse {
                     start_s: self.flaming_s,
                     end_s: self.residence_s,
                     steps: if none { 0 } else { RESIDUAL_STEPS },
-                    spacing: Spacing::Geometric {
-                        lead_s: ((self.residence_s - self.flaming_s) * RESIDUAL_LEAD_SHARE)
-                            .min(Lanes::splat(RESIDUAL_LEAD_MAX_S)),
-                    },
+                    spacing: Spacing::Geometric { lead_s: self.decay_s * RESIDUAL_LEAD_SHARE },
                 }
             }
             _ => Leg {
@@ -147,9 +144,12 @@ impl SurfaceForcing for Pulse {
                 (share * share, self.flaming, self.flaming.h_w_m2_k)
             }
             PLATEAU => (Lanes::ONE, self.flaming, self.flaming.h_w_m2_k),
-            RESIDUAL => (Lanes::ONE, self.residual, self.residual.h_w_m2_k),
+            RESIDUAL => {
+                let level = self.level_after_flaming(t_s);
+                (Lanes::ONE, level, level.h_w_m2_k)
+            }
             _ => {
-                let level = self.last_level();
+                let level = self.level_after_flaming(self.residence_s);
                 let g = ((self.residence_s - t_s) / self.decay_s).map(libm::exp);
                 let fire = (g * (1.0 / EMBERS)).min(Lanes::ONE);
                 (g, level, Lanes::splat(H_AFTER_W_M2_K) + fire * (level.h_w_m2_k - Lanes::splat(H_AFTER_W_M2_K)))
