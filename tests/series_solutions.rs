@@ -28,6 +28,8 @@ const SIZE_M: f64 = 0.05;
 const T0: f64 = 300.0;
 const GAS: f64 = 700.0;
 
+type Solved = ((String, f64, f64), Vec<(f64, f64)>);
+
 #[test]
 fn slab_and_sphere_under_convection() {
     let rows = reference::table("series_full.csv");
@@ -36,7 +38,8 @@ fn slab_and_sphere_under_convection() {
     let rock = constant_rock(&curve, K, RHO_C);
     let mut compared = 0;
     let mut worst = 0.0f64;
-    let mut solved: Option<((String, f64, f64), Vec<(f64, f64)>)> = None;
+    // The last case solved: shape, Biot and Fourier number, and its profile.
+    let mut solved: Option<Solved> = None;
     for row in &rows {
         let key = (row.text("shape").to_owned(), row.number("biot"), row.number("fourier"));
         if solved.as_ref().is_none_or(|(k, _)| *k != key) {
