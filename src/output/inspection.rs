@@ -13,7 +13,7 @@
 //! known to be of little concern. The limits are ours (assumption).
 //!
 //! **Text cells.** A cell of text that a spreadsheet would run as a formula is made inert by an apostrophe before it:
-//! when its first character (spaces aside) is `=`, `+`, `-`, `@` or the full-width form of one, or when it begins with a
+//! when its first character (spaces and invisible characters aside) is `=`, `+`, `-`, `@` or the full-width form of one, or when it begins with a
 //! tab or a line break. Numbers stay numbers. An empty cell is a value that was not computed or not recorded.
 
 use std::borrow::Cow;
@@ -198,7 +198,9 @@ pub fn write_inspection(out: impl io::Write, results: &[BoulderResult], order: &
 /// ```
 pub fn inert(text: &str) -> Cow<'_, str> {
     let starts_formula = |c: char| matches!(c, '=' | '+' | '-' | '@' | '＝' | '＋' | '－' | '＠');
-    let first_visible = text.chars().find(|c| !c.is_whitespace() && !c.is_control());
+    let unseen =
+        |c: char| c.is_whitespace() || c.is_control() || matches!(c, '\u{200b}'..='\u{200f}' | '\u{2060}' | '\u{feff}');
+    let first_visible = text.chars().find(|c| !unseen(*c));
     let runs = first_visible.is_some_and(starts_formula) || text.starts_with(['\t', '\r', '\n']);
     match runs {
         true => Cow::Owned(format!("'{text}")),
