@@ -9,6 +9,7 @@ use spallcast::flag::Flag;
 use spallcast::output::burns::BURN_FIELDS;
 use spallcast::output::fields::{BOULDER_FIELDS, BoulderResult, Field, JsonType, Value, markdown, number, significant};
 use spallcast::output::inspection::INSPECTION_COLUMNS;
+use spallcast::output::trails::TRAIL_FIELDS;
 
 /// Result columns of the boulder layer in the agreed order. Written out here on purpose: what users script against.
 const AGREED: &str = "status reason burn_id exposure_used exposure_inferred peak_surface_c_p05 peak_surface_c_p50 \
@@ -62,6 +63,7 @@ fn names_carry_their_units_and_meanings_are_sentences() {
     assert_eq!(faults(BOULDER_FIELDS), Vec::<String>::new());
     assert_eq!(faults(BURN_FIELDS), Vec::<String>::new());
     assert_eq!(faults(INSPECTION_COLUMNS), Vec::<String>::new());
+    assert_eq!(faults(TRAIL_FIELDS), Vec::<String>::new());
 }
 
 #[test]
@@ -196,6 +198,7 @@ fn the_page_lists_the_columns_as_they_are() {
     let tables = [
         ("boulders.geojson", markdown(BOULDER_FIELDS)),
         ("burns.geojson", markdown(BURN_FIELDS)),
+        ("trails.geojson", markdown(TRAIL_FIELDS)),
         ("inspection.csv", markdown(INSPECTION_COLUMNS)),
     ];
     let stale: String = (tables.iter())

@@ -1,64 +1,35 @@
-//! The inspection table: its order, its cells, and that no spreadsheet runs any of them.
+//! The inspection table: its rows, its cells, and that no spreadsheet runs any of them.
 
 #[path = "support/results.rs"]
 mod results;
 
 use results::{one, point, read, result, with, without};
 use spallcast::output::fields::BoulderResult;
-use spallcast::output::inspection::{INSPECTION_COLUMNS, assign_ranks, inert, inspection_order, write_inspection};
+use spallcast::output::inspection::{INSPECTION_COLUMNS, inert, write_inspection};
 
-/// Rows of the table by column name.
+/// Rows of the table by column name; the boulders are ranked as they stand.
 fn rows(results: &mut [BoulderResult]) -> Vec<std::collections::HashMap<String, String>> {
-    let order = assign_ranks(results);
+    for (rank, result) in (1..).zip(results.iter_mut()) {
+        result.inspection_rank = Some(rank);
+    }
+    let order: Vec<usize> = (0..results.len()).collect();
     let mut out = Vec::new();
     write_inspection(&mut out, results, &order).expect("memory");
     csv::Reader::from_reader(out.as_slice()).deserialize().map(|row| row.expect("a row")).collect()
 }
 
-fn order_of(results: &[BoulderResult]) -> Vec<&str> {
-    inspection_order(results).into_iter().map(|i| results[i].id()).collect()
-}
-
 #[test]
-fn what_is_unknown_comes_after_what_is_likely_and_before_what_is_unlikely() {
-    let refused = result(one(point("refused", r#","slope_deg":200"#)));
-    assert!(refused.feature.boulder.is_err());
-    let mut results = vec![
-        with("faint", 0.02, 0.0),
-        without("outside", &[]),
-        with("middling", 0.3, 0.001),
-        refused,
-        without("in_a_burn", &[0]),
-        with("likely", 0.9, 0.001),
-        with("likelier", 0.95, 0.0005),
-    ];
-    let expected = ["likelier", "likely", "in_a_burn", "refused", "middling", "outside", "faint"];
-    assert_eq!(order_of(&results), expected);
-    results.reverse();
-    assert_eq!(order_of(&results), expected, "the order of the file does not matter");
-    // A source likelihood replaces the likelihood of spalling.
-    let faint = results.iter_mut().find(|r| r.id() == "faint").expect("there");
-    faint.source.p_source_high = Some(0.97);
-    let likely = results.iter_mut().find(|r| r.id() == "likely").expect("there");
-    likely.source.p_source_high = Some(0.05);
-    assert_eq!(order_of(&results), ["faint", "likelier", "in_a_burn", "refused", "middling", "outside", "likely"]);
-}
-
-#[test]
-fn ties_go_to_the_larger_loss_and_then_to_the_name() {
-    let results = vec![with("b", 1.0, 0.002), with("c", 1.0, 0.003), with("a", 1.0, 0.002)];
-    assert_eq!(order_of(&results), ["c", "a", "b"]);
-}
-
-#[test]
-fn every_boulder_has_one_row_and_one_rank() {
+fn rows_stand_in_the_order_given() {
     let mut results = vec![with("A", 0.2, 0.001), without("B", &[0]), with("C", 0.8, 0.002)];
-    let rows = rows(&mut results);
-    let ids: Vec<&str> = rows.iter().map(|r| r["boulder_id"].as_str()).collect();
-    assert_eq!(ids, ["C", "B", "A"]);
-    let ranks: Vec<&str> = rows.iter().map(|r| r["rank"].as_str()).collect();
-    assert_eq!(ranks, ["1", "2", "3"]);
-    assert_eq!(results.iter().map(|r| r.inspection_rank).collect::<Vec<_>>(), [Some(3), Some(2), Some(1)]);
+    let order = [2, 1, 0];
+    for (rank, index) in (1..).zip(order) {
+        results[index].inspection_rank = Some(rank);
+    }
+    let mut out = Vec::new();
+    write_inspection(&mut out, &results, &order).expect("memory");
+    let text = String::from_utf8(out).expect("UTF-8");
+    let starts: Vec<&str> = text.lines().skip(1).map(|l| &l[..3]).collect();
+    assert_eq!(starts, ["1,C", "2,B", "3,A"]);
 }
 
 #[test]

@@ -7,7 +7,6 @@
 use serde_json::value::RawValue;
 
 use super::fields::{BoulderResult, Field, Value, field, number};
-use super::inspection;
 use crate::assess::{SpallSummary, Status};
 use crate::input::Properties;
 use crate::input::burns::Burns;
@@ -62,7 +61,7 @@ pub struct BurnSummary {
     pub with_source: u64,
     /// Mean source likelihood over these.
     pub p_source_mean: Option<f64>,
-    /// Names of the assessed boulders that come first in the order of inspection.
+    /// Names of the boulders that spalled most, the worst first.
     pub worst_boulders: Vec<String>,
 }
 
@@ -115,9 +114,13 @@ fn summarise(members: &[&BoulderResult]) -> BurnSummary {
     }
 }
 
-/// Names of the first in the order of inspection.
+/// Names of the boulders that spalled most: by likelihood, then expected loss, then name.
 fn worst(mut spalls: Vec<(&BoulderResult, &SpallSummary)>) -> Vec<String> {
-    spalls.sort_by(|(a, _), (b, _)| inspection::compare(a, b));
+    spalls.sort_by(|(a, of_a), (b, of_b)| {
+        (of_b.p_spall.total_cmp(&of_a.p_spall))
+            .then(of_b.loss_m.total_cmp(&of_a.loss_m))
+            .then_with(|| a.id().cmp(b.id()))
+    });
     spalls.iter().take(WORST_NAMED).map(|(r, _)| r.id().to_owned()).collect()
 }
 
@@ -169,7 +172,7 @@ pub const BURN_FIELDS: &[Field<BurnResult>] = &[
         "worst_boulders",
         "",
         Text,
-        "Assessed boulders that come first in the order of inspection, five at most, separated by semicolons.",
+        "Boulders that spalled most, by likelihood and then expected loss, five at most, separated by semicolons.",
         |r| { Value::text(r.summary.worst_boulders.join(";")) }
     ),
 ];

@@ -1,82 +1,16 @@
 //! `inspection.csv`: every boulder once, in the order in which to look at them.
 //!
-//! **Order** ([`compare`]). A boulder's concern is its upper source likelihood, or its likelihood of spalling where there
-//! is no source likelihood. Boulders come in five steps:
-//!
-//! 1. concern of one half or more;
-//! 2. not assessed, for a reason that leaves everything open (a refused record, a rock that is not known, ...);
-//! 3. concern from one tenth to one half;
-//! 4. not assessed because no recorded fire reached it;
-//! 5. concern below one tenth.
-//!
-//! Within a step: larger concern, then larger expected loss, then name. What is unknown is thus looked at before what is
-//! known to be of little concern. The limits are ours (assumption).
+//! The order itself is made in [`crate::trail::inspection`]; here it is written down.
 //!
 //! **Text cells.** A cell of text that a spreadsheet would run as a formula is made inert by an apostrophe before it:
 //! when its first character (spaces and invisible characters aside) is `=`, `+`, `-`, `@` or the full-width form of one, or when it begins with a
 //! tab or a line break. Numbers stay numbers. An empty cell is a value that was not computed or not recorded.
 
 use std::borrow::Cow;
-use std::cmp::Ordering;
 use std::io;
 
 use super::fields::{BOULDER_FIELDS, BoulderResult, Field, Value, field};
-use crate::flag::Flag;
 use crate::site::{Boulder, RockChoice};
-
-/// Concern from which a boulder comes first (A).
-const HIGH_CONCERN: f64 = 0.5;
-/// Concern below which a boulder comes last (A).
-const LOW_CONCERN: f64 = 0.1;
-
-/// Places in the order of inspection: indices into `results`, first to look at first.
-pub fn inspection_order(results: &[BoulderResult]) -> Vec<usize> {
-    let mut order: Vec<usize> = (0..results.len()).collect();
-    order.sort_by(|a, b| compare(&results[*a], &results[*b]));
-    order
-}
-
-/// Gives every boulder its rank, from 1, and returns the order.
-pub fn assign_ranks(results: &mut [BoulderResult]) -> Vec<usize> {
-    let order = inspection_order(results);
-    for (rank, index) in (1..).zip(&order) {
-        results[*index].inspection_rank = Some(rank);
-    }
-    order
-}
-
-/// Which of two boulders to look at first. Ties go to the name, so the order of the file does not matter.
-pub fn compare(a: &BoulderResult, b: &BoulderResult) -> Ordering {
-    let key = |r: &BoulderResult| (step(r), concern(r).unwrap_or(0.0), loss(r));
-    let ((step_a, concern_a, loss_a), (step_b, concern_b, loss_b)) = (key(a), key(b));
-    step_a
-        .cmp(&step_b)
-        .then(concern_b.total_cmp(&concern_a))
-        .then(loss_b.total_cmp(&loss_a))
-        .then_with(|| a.id().cmp(b.id()))
-        .then(a.feature.index.cmp(&b.feature.index))
-}
-
-/// Upper source likelihood, or the likelihood of spalling without one.
-fn concern(result: &BoulderResult) -> Option<f64> {
-    result.source.p_source_high.or(result.assessment.spall.as_ref().map(|s| s.p_spall))
-}
-
-fn loss(result: &BoulderResult) -> f64 {
-    result.assessment.spall.as_ref().map_or(0.0, |s| s.loss_m)
-}
-
-fn step(result: &BoulderResult) -> u8 {
-    let unburnt = result.within.is_empty() && result.feature.boulder.is_ok()
-        || result.assessment.flags.contains(&Flag::BeyondFlames);
-    match concern(result) {
-        Some(p) if p >= HIGH_CONCERN => 1,
-        None if !unburnt => 2,
-        Some(p) if p >= LOW_CONCERN => 3,
-        None => 4,
-        Some(_) => 5,
-    }
-}
 
 /// Decimals of a degree in tables: about 1 cm on the ground.
 const PLACE_DECIMALS: f64 = 1e7;

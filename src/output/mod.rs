@@ -3,14 +3,15 @@
 //! ```text
 //! fields      the registry: every column of the boulder layer, once
 //! burns       what the boulders of a burn come to, and its columns
-//! inspection  the order of inspection and its table
+//! inspection  the inspection table
 //! geojson     the layers and the newline-delimited form
 //! cautions    what goes with every layer, table and page
 //! run_record  what was run on what, and what came of it
 //! directory   files written beside and renamed, so that a failed run leaves the old ones
-//! message     findings and errors as lines for people and machines
-//! probe_table one boulder through time and depth, as text and JSON
+//! message     messages as JSON, for logs
+//! probe_table one boulder through time and depth, as text, JSON and CSV
 //! rock_table  the catalogue as text and JSON
+//! trails      the columns of the trail layer
 //! ```
 
 pub mod burns;
@@ -29,6 +30,6 @@ pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, burn_results, summarise_bu
 pub use directory::{Committed, OutputDirectory, OutputError, WrittenFile};
 pub use fields::{BOULDER_FIELDS, BoulderResult, SourceColumns};
 pub use geojson::{LayerHead, write_boulder_line, write_boulders, write_burns, write_trails};
-pub use inspection::{assign_ranks, inspection_order, write_inspection};
+pub use inspection::write_inspection;
 pub use run_record::{InputRecord, OptionsRecord, RunCounts, RunRecord};
 pub use trails::{SegmentRow, TRAIL_FIELDS};

@@ -1,6 +1,6 @@
 //! `trails.geojson`: one line per segment.
 
-use super::fields::{Field, JsonType, Value, number};
+use super::fields::{Field, Value, field, number};
 use crate::trail::judge::SegmentResult;
 use crate::trail::segments::Segment;
 
@@ -24,12 +24,6 @@ fn optional(x: Option<f64>) -> Value<'static> {
 /// Tenths of a metre along the trail.
 fn along(metres: f64) -> Value<'static> {
     number((metres * 10.0).round() / 10.0)
-}
-
-macro_rules! field {
-    ($name:literal, $unit:literal, $kind:ident, $meaning:literal, $value:expr) => {
-        Field { name: $name, unit: $unit, kind: JsonType::$kind, meaning: $meaning, value: $value }
-    };
 }
 
 /// Every column of the trail layer, in order.
@@ -102,7 +96,9 @@ pub const TRAIL_FIELDS: &[Field<SegmentRow>] = &[
         r.result.decision.proposal.word()
     )),
     field!("reason", "", Text, "Why, in plain words.", |r| Value::text(r.result.decision.reason.as_str())),
-    field!("horizon_days", "d", Number, "The days that the likelihoods refer to.", |r| number(r.result.horizon_days)),
+    field!("horizon_days", "days", Number, "The days that the likelihoods refer to.", |r| number(
+        r.result.horizon_days
+    )),
     field!("review_on", "", Text, "Day of the next review, ISO 8601.", |r| Value::text(r.result.review_on.to_string())),
     field!("reopens_when", "", Text, "What would allow the stretch to reopen, or the next step.", |r| Value::text(
         r.result.decision.reopens_when.as_str()
