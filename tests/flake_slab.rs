@@ -12,7 +12,7 @@ use spallcast::spall::rind::{buckling_rise_k, buckling_stress_pa};
 use spallcast::spall::slab::{flaw_limited_pa, volume_scaled_pa};
 use spallcast::spall::steam::saturation_pressure_pa;
 use spallcast::stress::skin::membrane_force_n_m;
-use spallcast::stress::sphere::normal_tension;
+use spallcast::stress::sphere::Shells;
 use support::{Steady, constant_rock, nothing, run};
 
 /// Integrals on a fine grid: what the tail below .35 of the face's stress holds, for m of 8 and from 10 on.
@@ -178,7 +178,9 @@ fn force_follows_dose_and_tension_its_plateau() {
             assert!((force / exact - 1.0).abs() < DOSE, "k {k}: {force} against {exact}");
             // On a large sphere the tension below the skin is 2 N/R.
             let mut tension = vec![Lanes::ZERO; stress.len()];
-            normal_tension(&column.grid.depth_m, &stress, Lanes::splat(1.0 / radius), &mut tension);
+            let depth = &column.grid.depth_m;
+            let shells = Shells::new(depth, Lanes::splat(1.0 / radius));
+            shells.normal_tension(depth, &stress, depth.len(), &mut tension);
             let largest = tension.iter().map(|t| t.0[0]).fold(0.0, f64::max);
             assert!((largest / (2.0 * force / radius) - 1.0).abs() < PLATEAU, "k {k}: {largest}");
             compared += 1;

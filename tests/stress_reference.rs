@@ -8,7 +8,7 @@ mod reference;
 
 use spallcast::numerics::lanes::Lanes;
 use spallcast::stress::patch::Plan;
-use spallcast::stress::sphere::{CAP_FACTOR_SHARE, CAP_FACTOR_SKIN, cap_factor, normal_tension};
+use spallcast::stress::sphere::{CAP_FACTOR_SHARE, CAP_FACTOR_SKIN, Shells, cap_factor};
 
 /// Of alpha E dT/(1 - nu): trapezoids on 2000 even cells, the centre left out.
 const SPHERE: f64 = 5e-5;
@@ -27,7 +27,7 @@ fn sphere(s: impl Fn(f64) -> f64) -> Vec<(f64, f64)> {
     let depth: Vec<Lanes> = (0..=CELLS).map(|i| Lanes::splat(i as f64 / CELLS as f64)).collect();
     let stress: Vec<Lanes> = depth.iter().map(|x| Lanes::splat(s(x.0[0]))).collect();
     let mut tension = vec![Lanes::ZERO; depth.len()];
-    normal_tension(&depth, &stress, Lanes::ONE, &mut tension);
+    Shells::new(&depth, Lanes::ONE).normal_tension(&depth, &stress, depth.len(), &mut tension);
     depth.iter().zip(&tension).map(|(x, t)| (x.0[0], t.0[0])).collect()
 }
 

@@ -167,8 +167,7 @@ impl<'a> WatchInputs<'a> {
         body: &Body,
         table: &'a RockTable,
         skin_law: &'a crate::stress::skin::SkinLaw,
-        tensile_factor: &'a dyn Fn(f64) -> f64,
-        toughness_factor: &'a dyn Fn(f64) -> f64,
+        strength_law: &'a crate::spall::slab::StrengthLaw,
         settings: &SpallSettings,
     ) -> WatchInputs<'a> {
         let parameters = &table.rock.spall;
@@ -181,6 +180,7 @@ impl<'a> WatchInputs<'a> {
                     restraint_pa_per_k: lanes(draws, |d| {
                         d.expansion_per_k * d.youngs_modulus_pa / (1.0 - d.poissons_ratio)
                     }),
+                    start_k: lanes(draws, |d| d.ambient_k),
                     start_strain_k: lanes(draws, |d| skin_law.strain_over_expansion_k(d.ambient_k)),
                     residual_branch: lanes(draws, |d| f64::from(u8::from(d.residual_stiffness))),
                 },
@@ -226,8 +226,7 @@ impl<'a> WatchInputs<'a> {
                 }),
                 wet: (body.moisture == Moisture::Wet)
                     .then(|| std::array::from_fn(|l| WetDraw { porosity: draws[l].porosity })),
-                tensile_factor,
-                toughness_factor,
+                strength_law,
                 leaves_probability: settings.slab_leaves_probability,
                 generations_max: settings.slab_generations_max,
             },
@@ -235,8 +234,8 @@ impl<'a> WatchInputs<'a> {
     }
 
     /// A watch over them.
-    pub fn watch(&'a self, material: &'a Material<'a>, nodes: usize) -> Watch<'a> {
-        Watch::new(&self.draws, material, nodes)
+    pub fn watch(&'a self, material: &'a Material<'a>, grid: &Grid) -> Watch<'a> {
+        Watch::new(&self.draws, material, grid)
     }
 }
 
@@ -252,7 +251,41 @@ pub struct BatchResult {
 }
 
 /// Marches eight draws of one rock through their pulses.
+///
+/// The same code is compiled twice, for the processor every machine has and for one with 256-bit registers, and the wider
+/// one is taken where it is there. Neither fuses a multiplication with an addition, so both give the same bits.
 pub fn run(
+    draws: &[Draw; LANES],
+    body: &Body,
+    table: &RockTable,
+    settings: &SpallSettings,
+    resolution: &Resolution,
+) -> BatchResult {
+    #[cfg(target_arch = "x86_64")]
+    if std::arch::is_x86_feature_detected!("avx2") {
+        // SAFETY: the processor has the feature, as was just asked.
+        #[allow(unsafe_code, reason = "calling a function compiled for a processor feature")]
+        return unsafe { run_wide(draws, body, table, settings, resolution) };
+    }
+    run_portable(draws, body, table, settings, resolution)
+}
+
+/// [`run_portable`], compiled for 256-bit registers.
+#[cfg(target_arch = "x86_64")]
+#[target_feature(enable = "avx2")]
+fn run_wide(
+    draws: &[Draw; LANES],
+    body: &Body,
+    table: &RockTable,
+    settings: &SpallSettings,
+    resolution: &Resolution,
+) -> BatchResult {
+    run_portable(draws, body, table, settings, resolution)
+}
+
+/// [`run`] for the processor that the program was built for.
+#[inline(always)]
+pub fn run_portable(
     draws: &[Draw; LANES],
     body: &Body,
     table: &RockTable,
@@ -261,15 +294,12 @@ pub fn run(
 ) -> BatchResult {
     let material = material(draws, body, table, &table.curve, Constant::default());
     let pulse = pulse(draws, settings);
-    let residual = &table.rock.residual;
-    let (tensile, toughness) =
-        (|t: f64| residual.tensile_strength.factor(t), |t: f64| residual.fracture_toughness.factor(t));
-    let inputs = WatchInputs::new(draws, body, table, &table.skin, &tensile, &toughness, settings);
+    let inputs = WatchInputs::new(draws, body, table, &table.skin, &table.strength, settings);
     let whole_s = pulse.residence_s + pulse.decay_s * DECAY_LENGTHS;
     let grid = grid(draws, body, pulse.residence_s, whole_s, resolution);
     let sphere = std::array::from_fn(|l| grid.curvature_per_m.0[l] > 0.0);
     let limit = lanes(draws, |d| d.absorbed_limit_j_m2);
-    let mut watch = inputs.watch(&material, resolution.nodes);
+    let mut watch = inputs.watch(&material, &grid);
     let (_, account) = march(&material, &pulse, grid, lanes(draws, |d| d.ambient_k), limit, resolution, &mut watch);
     BatchResult { outcomes: watch.outcomes(&account), sphere, account }
 }
@@ -278,6 +308,7 @@ pub fn run(
 pub const DECAY_LENGTHS: f64 = 10.0;
 
 /// Marches a column from a uniform start.
+#[inline(always)]
 pub fn march(
     material: &Material,
     forcing: &impl SurfaceForcing,

@@ -19,7 +19,7 @@ use crate::numerics::lanes::{LANES, Lanes};
 use crate::rock::Property;
 use crate::settings::SpallSettings;
 use crate::spall::outcome::{Event, Outcome};
-use crate::spall::slab::{self, SIZE_MODULUS_MIDDLE};
+use crate::spall::slab::{self, SIZE_MODULUS_MIDDLE, StrengthLaw};
 use crate::spall::watch::Watch;
 use crate::stress::skin::SkinLaw;
 
@@ -284,15 +284,17 @@ fn run_forcing(
         |t| if constant.expansion { t - crate::heat::material::REFERENCE_K } else { rock.strain_over_expansion(t) },
         |t| if constant.youngs_modulus { 1.0 } else { rock.residual.youngs_modulus.factor(t) },
     );
-    let tensile = |t: f64| if constant.tensile_strength { 1.0 } else { rock.residual.tensile_strength.factor(t) };
-    let toughness = |t: f64| if constant.fracture_toughness { 1.0 } else { rock.residual.fracture_toughness.factor(t) };
+    let strength_law = StrengthLaw::new(
+        |t| if constant.tensile_strength { 1.0 } else { rock.residual.tensile_strength.factor(t) },
+        |t| if constant.fracture_toughness { 1.0 } else { rock.residual.fracture_toughness.factor(t) },
+    );
     let material = batch::material(&lanes, body, table, curve, constant);
-    let inputs = WatchInputs::new(&lanes, body, table, &skin_law, &tensile, &toughness, settings);
+    let inputs = WatchInputs::new(&lanes, body, table, &skin_law, &strength_law, settings);
     let grid = batch::grid(&lanes, body, heating_s, whole_s, &resolution);
     let sphere = grid.curvature_per_m.0[0] > 0.0;
     let start = Lanes::splat(median.draw.ambient_k);
     let mut recorder = Recorder {
-        watch: inputs.watch(&material, resolution.nodes),
+        watch: inputs.watch(&material, &grid),
         depth_m,
         wanted_s: time_s.to_vec(),
         every: if time_s.is_empty() { resolution.refine } else { 0 },

@@ -8,6 +8,7 @@ use crate::fire::exposure::ExposureClass;
 use crate::heat::material::HeatCurve;
 use crate::rock::Property;
 use crate::rock::catalogue::{Catalogue, Rock};
+use crate::spall::slab::StrengthLaw;
 use crate::stress::skin::SkinLaw;
 
 /// Correlation of (ln residence, ln irradiance) and of (ln irradiance, gas temperature) (judgement).
@@ -42,6 +43,8 @@ pub struct RockTable {
     pub curve: HeatCurve,
     /// Its strain and stiffness.
     pub skin: SkinLaw,
+    /// Its residual strength.
+    pub strength: StrengthLaw,
     samples: Vec<Vec<f64>>,
 }
 
@@ -59,6 +62,10 @@ impl RockTable {
         RockTable {
             curve: HeatCurve::new(|t| rock.specific_heat_ratio(t)),
             skin: SkinLaw::new(|t| rock.strain_over_expansion(t), |t| rock.residual.youngs_modulus.factor(t)),
+            strength: StrengthLaw::new(
+                |t| rock.residual.tensile_strength.factor(t),
+                |t| rock.residual.fracture_toughness.factor(t),
+            ),
             samples: Property::ALL.iter().map(sample).collect(),
             rock: rock.clone(),
         }

@@ -71,6 +71,7 @@ impl March {
     /// The energy guard looks at each step before it is taken: where the heat it would bring at the larger of the flux now
     /// and the flux at its end exceeds what is left, the fire's part of that step is scaled
     /// down to it, and the fire is out afterwards. Scaling the fire's part by s leaves at most s of the flux, so the limit holds.
+    #[inline(always)]
     pub fn run(
         &self,
         column: &mut Column,

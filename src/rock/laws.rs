@@ -7,9 +7,8 @@
 //! Sekiguchi 1984, T in K:  k = 1.84 + 358 (1.0227 k20 - 1.882)(1/T - .00068) = a + b/T.
 //!
 //! Symbols: k conductivity (W/mK), k0, k20, k25 its value at 0, 20, 25 C, w resistivity (mK/W).
-//! Assumption: the published laws are anchored at 25 C or 0 C and their roundings leave k(25) up to 1 % off k25; here
-//! each is scaled by a constant so that k(20 C) is the sampled k20 exactly. k20 stands in for k25 inside k0, which moves
-//! the slope by less than the 1 % between 20 and 25 C.
+//! The published laws are anchored at 25 C or 0 C; here k25 is solved so that the law passes through the sampled k20 at
+//! 20 C, and what the clamps leave over is scaled away, so that k(20 C) = k20 exactly.
 //! Clamps: slope a - b/k0 and the root's argument at 0 or above. Sekiguchi below about k20 .56 would make rock
 //! conduct almost nothing in frost; b is held so that k(-50 C) keeps a tenth of k20 (judgement).
 //! Valid range: Vosteen & Schellschmidt to 500 C, Sekiguchi to 300 C; beyond, the same line is carried on.
@@ -162,7 +161,13 @@ pub fn resistivity(law: ConductivityLaw, k20: f64) -> Resistivity {
         ConductivityLaw::Crystalline => VosteenForm::Crystalline,
         ConductivityLaw::Sedimentary => VosteenForm::Sedimentary,
     };
-    let k0 = vosteen_k0(k20, form);
+    // The published anchor is k25: the one whose law passes through k20. Each turn gains two digits.
+    let mut k25 = k20;
+    for _ in 0..4 {
+        k25 *= k20 / vosteen(k25, SAMPLED_C, form);
+    }
+    let k0 = vosteen_k0(k25, form);
+    // What rounding in k0 and the clamps leave over.
     let scale = 1.0 / (k20 * vosteen_denominator(k0, SAMPLED_C, form));
     Resistivity::Linear { w0: VOSTEEN_OFFSET * scale, w1_per_k: vosteen_slope(k0, form) * scale }
 }

@@ -26,6 +26,8 @@ pub const FLAW_COEFFICIENTS: [(f64, f64); 3] = [(5.0, 0.3), (10.0, 0.5), (15.0, 
 pub const FLAKABLE_WEIGHTS: [f64; 3] = [0.25, 0.5, 0.25];
 /// Share of the largest stress below which the tail is dropped.
 const TAIL: f64 = 0.35;
+/// (s/s0)^m below which a skin of any thickness gives less than a millionth of a site's risk.
+const COLD_DENSITY: f64 = 1e-7;
 /// Gauss-Legendre points and weights on the unit interval.
 const GAUSS: [(f64, f64); 3] =
     [(0.112_701_665_379_258_31, 5.0 / 18.0), (0.5, 8.0 / 18.0), (0.887_298_334_620_741_7, 5.0 / 18.0)];
@@ -55,6 +57,9 @@ pub struct FlakeDraws {
 /// Risk of a site and mean depth of its disc, m, for a profile. `depth_m` and `stress_pa` are `[n]`, face first.
 #[inline(always)]
 pub fn risk(draws: &FlakeDraws, depth_m: &[Lanes], stress_pa: &[Lanes], largest_pa: Lanes) -> (Lanes, Lanes) {
+    if (power((largest_pa * draws.per_scale).max(Lanes::ZERO), draws.modulus)).largest() < COLD_DENSITY {
+        return (Lanes::ZERO, Lanes::ZERO);
+    }
     let cut = largest_pa * TAIL;
     let mut second = Lanes::ZERO;
     let mut third = Lanes::ZERO;

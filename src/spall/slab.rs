@@ -12,6 +12,7 @@
 //! Adding convex and patch terms would be nearer the finite elements for caps under f .05 (up to 25 % low as it is).
 
 use crate::numerics::lanes::{LANES, Lanes};
+use crate::numerics::table::UniformTable;
 use crate::site::Weathering;
 use crate::stress::patch::Plan;
 use crate::stress::sphere;
@@ -71,6 +72,31 @@ pub fn flaw_limited_pa(tensile_pa: f64, toughness_pa_sqrt_m: f64, flaw_radius_m:
     tensile_pa.min(toughness_pa_sqrt_m * (core::f64::consts::PI / (4.0 * flaw_radius_m)).sqrt())
 }
 
+/// Residual tensile strength and toughness of one rock over the cold ones, by the temperature reached, K.
+#[derive(Debug, Clone, PartialEq)]
+pub struct StrengthLaw {
+    tensile: UniformTable,
+    toughness: UniformTable,
+}
+
+impl StrengthLaw {
+    /// Tables of the two laws.
+    pub fn new(tensile: impl Fn(f64) -> f64, toughness: impl Fn(f64) -> f64) -> StrengthLaw {
+        const FROM_K: f64 = 203.15;
+        const TO_K: f64 = 1603.15;
+        const SEGMENTS: usize = 560;
+        StrengthLaw {
+            tensile: UniformTable::new(FROM_K, TO_K, SEGMENTS, tensile),
+            toughness: UniformTable::new(FROM_K, TO_K, SEGMENTS, toughness),
+        }
+    }
+
+    /// Strength over the cold one where the rock has reached `hottest_k`.
+    pub fn factor(&self, toughness_limited: bool, hottest_k: f64) -> f64 {
+        if toughness_limited { self.toughness.at(hottest_k).0 } else { self.tensile.at(hottest_k).0 }
+    }
+}
+
 /// Geometry that turns a hot skin into normal tension, per draw.
 #[derive(Debug, Clone, Copy, PartialEq)]
 pub struct Face {
@@ -103,9 +129,18 @@ impl Face {
     }
 
     /// Normal tension of every node into `tension_pa` `[n]` (convex term alone, after the cap factor), and the drive.
+    /// Stress is zero from node `active` on.
     #[inline(always)]
-    pub fn drive(&self, depth_m: &[Lanes], stress_pa: &[Lanes], force_n_m: Lanes, tension_pa: &mut [Lanes]) -> Drive {
-        sphere::normal_tension(depth_m, stress_pa, self.curvature_per_m, tension_pa);
+    pub fn drive(
+        &self,
+        shells: &sphere::Shells,
+        depth_m: &[Lanes],
+        stress_pa: &[Lanes],
+        active: usize,
+        force_n_m: Lanes,
+        tension_pa: &mut [Lanes],
+    ) -> Drive {
+        shells.normal_tension(depth_m, stress_pa, active, tension_pa);
         let skin_m = force_n_m / stress_pa[0].max(Lanes::ONE);
         let factor = Lanes::from_fn(|l| {
             sphere::cap_factor(self.heated_share.0[l], (skin_m.0[l] * self.curvature_per_m.0[l]).max(0.0))
@@ -127,8 +162,13 @@ impl Face {
             }
         }
         let patch = Lanes::from_fn(|l| {
+            // The thin-skin form is an upper bound: where even that does not govern, the stack of sheets does not.
             let z = (self.plan.peak_depth() * self.patch_m.0[l]).min(judged.0[l]);
-            force_n_m.0[l] * self.plan.tension_per_force(self.patch_m.0[l], z)
+            if force_n_m.0[l] * self.plan.tension_per_force(self.patch_m.0[l], z) <= convex.0[l] {
+                return 0.0;
+            }
+            let skin = depth_m[..active].iter().zip(&stress_pa[..active]).map(|(z, s)| (z.0[l], s.0[l]));
+            self.plan.largest_tension_pa(self.patch_m.0[l], judged.0[l], skin)
         });
         Drive { largest_pa: convex.max(patch), convex_pa: convex, skin_m }
     }

@@ -8,14 +8,8 @@
 /// Critical temperature of water, K, and pressure, Pa.
 const CRITICAL_K: f64 = 647.096;
 const CRITICAL_PA: f64 = 22.064e6;
-const COEFFICIENTS: [(f64, f64); 6] = [
-    (-7.859_517_83, 1.0),
-    (1.844_082_59, 1.5),
-    (-11.786_649_7, 3.0),
-    (22.680_741_1, 3.5),
-    (-15.961_871_9, 4.0),
-    (1.801_225_02, 7.5),
-];
+/// a1 to a6.
+const A: [f64; 6] = [-7.859_517_83, 1.844_082_59, -11.786_649_7, 22.680_741_1, -15.961_871_9, 1.801_225_02];
 
 /// Saturation pressure at `t_k`, Pa.
 ///
@@ -28,6 +22,8 @@ pub fn saturation_pressure_pa(t_k: f64) -> f64 {
         return CRITICAL_PA;
     }
     let s = 1.0 - t_k / CRITICAL_K;
-    let sum: f64 = COEFFICIENTS.iter().map(|(a, power)| a * libm::pow(s, *power)).sum();
+    let root = s.sqrt();
+    let (s3, s4) = (s * s * s, s * s * s * s);
+    let sum = A[0] * s + A[1] * s * root + A[2] * s3 + A[3] * s3 * root + A[4] * s4 + A[5] * s4 * s3 * root;
     CRITICAL_PA * libm::exp(CRITICAL_K / t_k * sum)
 }

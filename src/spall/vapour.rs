@@ -12,14 +12,20 @@ use crate::spall::steam::saturation_pressure_pa;
 const PRESSURE_SHARE: f64 = 0.6;
 /// Viscosity of water near 200 C, Pa s (recalled, rounded).
 const VISCOSITY_PA_S: f64 = 1.5e-4;
-/// Permeability at a porosity of one per cent, m2, and the power of porosity (assumption).
+/// Permeability at a reference porosity, m2 (assumption).
 const PERMEABILITY_M2: f64 = 1e-19;
-const POROSITY_POWER: f64 = 3.0;
+const REFERENCE_POROSITY: f64 = 0.01;
+/// Below this the pressure is under one atmosphere and is left out, K.
+const BOILING_K: f64 = 373.15;
 
 /// Tension that pore pressure adds at depth `z_m` and temperature `t_k` after `time_s` of heating, Pa.
 pub fn tension_pa(porosity: f64, z_m: f64, t_k: f64, time_s: f64) -> f64 {
+    if t_k < BOILING_K {
+        return 0.0;
+    }
     let p = saturation_pressure_pa(t_k);
-    let permeability = PERMEABILITY_M2 * libm::pow(porosity / 0.01, POROSITY_POWER);
+    let ratio = porosity / REFERENCE_POROSITY;
+    let permeability = PERMEABILITY_M2 * (ratio * ratio * ratio);
     let leak_off_s = z_m * z_m * porosity * VISCOSITY_PA_S / (permeability * p);
     if leak_off_s > time_s { PRESSURE_SHARE * p } else { 0.0 }
 }

@@ -7,18 +7,22 @@
 
 use super::flake::{self, FlakeDraws, MEDIAN_RISK};
 use super::outcome::{Event, Events, Family, Outcome, SLABS_MAX};
-use super::slab::{Drive, Face, SPLIT_FACTOR, SPLIT_RADIUS_MAX_M};
+use super::slab::{Drive, Face, SPLIT_FACTOR, SPLIT_RADIUS_MAX_M, StrengthLaw};
 use super::vapour;
 use crate::heat::column::Column;
+use crate::heat::grid::Grid;
 use crate::heat::march::{Account, Moment, Observer, Verdict};
 use crate::heat::material::Material;
 use crate::numerics::lanes::{LANES, Lanes};
 use crate::stress::skin::{SkinDraws, SkinLaw, membrane_force_n_m};
+use crate::stress::sphere::Shells;
 use crate::units::ICE_POINT_K;
 
 /// The march may stop once the face is colder than this, K, and the drive below this share of its largest value.
 const COLD_FACE_K: f64 = 100.0 + ICE_POINT_K;
 const PAST_PEAK: f64 = 0.95;
+/// A drive below this share of the strength of the face is not followed closely.
+const FAR_BELOW: f64 = 0.6;
 
 /// What one draw is held against in tension.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -71,10 +75,8 @@ pub struct WatchDraws<'a> {
     pub rind: Option<[RindDraw; LANES]>,
     /// Pore pressure, where wet.
     pub wet: Option<[WetDraw; LANES]>,
-    /// Residual tensile strength over the cold one, by the temperature reached, K.
-    pub tensile_factor: &'a dyn Fn(f64) -> f64,
-    /// Residual toughness likewise.
-    pub toughness_factor: &'a dyn Fn(f64) -> f64,
+    /// Residual strength of the rock.
+    pub strength_law: &'a StrengthLaw,
     /// Probability that a plate leaves.
     pub leaves_probability: f64,
     /// Slabs that may follow one another.
@@ -108,6 +110,7 @@ struct DrawState {
 pub struct Watch<'a> {
     draws: &'a WatchDraws<'a>,
     material: &'a Material<'a>,
+    shells: Shells,
     stress_pa: Vec<Lanes>,
     tension_pa: Vec<Lanes>,
     state: [DrawState; LANES],
@@ -117,8 +120,9 @@ pub struct Watch<'a> {
 }
 
 impl<'a> Watch<'a> {
-    /// A watch over a batch whose columns have `n` nodes.
-    pub fn new(draws: &'a WatchDraws<'a>, material: &'a Material<'a>, n: usize) -> Watch<'a> {
+    /// A watch over a batch on a grid.
+    pub fn new(draws: &'a WatchDraws<'a>, material: &'a Material<'a>, grid: &Grid) -> Watch<'a> {
+        let n = grid.len();
         let state = std::array::from_fn(|l| DrawState {
             margin_pa: -draws.slab[l].strength_pa,
             depth_m: 0.0,
@@ -151,6 +155,7 @@ impl<'a> Watch<'a> {
         Watch {
             draws,
             material,
+            shells: Shells::new(&grid.depth_m, draws.face.curvature_per_m),
             stress_pa: vec![zero; n],
             tension_pa: vec![zero; n],
             state,
@@ -229,11 +234,7 @@ impl<'a> Watch<'a> {
     /// Strength of a draw whose cracking depth has reached `hottest_k`.
     fn strength_pa(&self, lane: usize, hottest_k: f64) -> f64 {
         let slab = &self.draws.slab[lane];
-        let factor = if slab.toughness_limited {
-            (self.draws.toughness_factor)(hottest_k)
-        } else {
-            (self.draws.tensile_factor)(hottest_k)
-        };
+        let factor = self.draws.strength_law.factor(slab.toughness_limited, hottest_k);
         slab.strength_pa * factor
     }
 
@@ -241,6 +242,13 @@ impl<'a> Watch<'a> {
     fn see_slab(&mut self, lane: usize, column: &Column, moment: &Moment, drive: &Drive) -> Option<f64> {
         let slab = self.draws.slab[lane];
         let largest = drive.largest_pa.0[lane];
+        // The crack lies below the face, which is hotter and weaker: far below the face's own strength nothing can happen.
+        let weakest = self.strength_pa(lane, column.hottest_k[0].0[lane]);
+        if largest < FAR_BELOW * weakest {
+            self.state[lane].margin_pa = largest - weakest;
+            self.state[lane].depth_m = 0.0;
+            return None;
+        }
         let depth =
             self.draws.face.cracking_depth_m(lane, drive, &column.grid.depth_m, &self.tension_pa, slab.patch_depth);
         let hottest = at_depth(column, &column.hottest_k, lane, depth);
@@ -365,10 +373,13 @@ impl Observer for Watch<'_> {
     #[inline(always)]
     fn see(&mut self, column: &mut Column, moment: &Moment) -> Verdict {
         let depth_m = &column.grid.depth_m;
-        let largest =
+        let (largest, active) =
             self.draws.skin_law.stress(&self.draws.skin, &column.temperature_k, &column.hottest_k, &mut self.stress_pa);
-        let force = membrane_force_n_m(depth_m, &self.stress_pa);
-        let mut drive = self.draws.face.drive(depth_m, &self.stress_pa, force, &mut self.tension_pa);
+        // Up to and with the first node without stress.
+        let reach = (active + 1).min(depth_m.len());
+        let force = membrane_force_n_m(&depth_m[..reach], &self.stress_pa[..reach]);
+        let face = &self.draws.face;
+        let mut drive = face.drive(&self.shells, depth_m, &self.stress_pa, reach, force, &mut self.tension_pa);
         self.add_vapour(column, moment, &mut drive);
         self.last = (force, drive);
         let (risk, flake_depth) = flake::risk(&self.draws.flake, depth_m, &self.stress_pa, largest);

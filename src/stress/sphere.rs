@@ -18,29 +18,56 @@ pub const CAP_FACTOR_SKIN: std::ops::RangeInclusive<f64> = 0.01..=0.14;
 /// See [`CAP_FACTOR_SKIN`].
 pub const CAP_FACTOR_SHARE: std::ops::RangeInclusive<f64> = 0.15..=1.0;
 
-/// Normal tension at every node, `[n]`, into `tension_pa`, for eight spheres of curvature `1/R`; nodes beyond the centre
-/// are left at zero. A curvature of zero gives zero.
-#[inline(always)]
-pub fn normal_tension(depth_m: &[Lanes], stress_pa: &[Lanes], curvature_per_m: Lanes, tension_pa: &mut [Lanes]) {
-    let n = depth_m.len();
-    let mut cumulative = Lanes::ZERO;
-    tension_pa[0] = Lanes::ZERO;
-    let weighted = |i: usize| {
-        let p = (Lanes::ONE - depth_m[i] * curvature_per_m).max(Lanes::ZERO);
-        stress_pa[i] * p * p
-    };
-    let mut above = weighted(0);
-    for i in 1..n {
-        let here = weighted(i);
-        cumulative += (above + here) * (depth_m[i] - depth_m[i - 1]) * 0.5;
-        tension_pa[i] = cumulative;
-        above = here;
+/// Powers of p = 1 - z/R at the nodes of a grid, which do not change while it is marched.
+#[derive(Debug, Clone)]
+pub struct Shells {
+    /// 2/R, 1/m.
+    two_over_radius: Lanes,
+    /// p^2, zero beyond the centre, `[n]`.
+    squared: Vec<Lanes>,
+    /// 1/p^3, `[n]`.
+    inverse_cubed: Vec<Lanes>,
+}
+
+impl Shells {
+    /// Powers at `depth_m` `[n]` for eight spheres of curvature 1/R; 0 is a flat face.
+    pub fn new(depth_m: &[Lanes], curvature_per_m: Lanes) -> Shells {
+        let p = |z: &Lanes, least: f64| (Lanes::ONE - *z * curvature_per_m).max(Lanes::splat(least));
+        Shells {
+            two_over_radius: curvature_per_m * 2.0,
+            squared: depth_m.iter().map(|z| p(z, 0.0) * p(z, 0.0)).collect(),
+            inverse_cubed: depth_m
+                .iter()
+                .map(|z| {
+                    let p = p(z, 1e-3);
+                    Lanes::ONE / (p * p * p)
+                })
+                .collect(),
+        }
     }
-    let whole = cumulative;
-    for i in 1..n {
-        let p = (Lanes::ONE - depth_m[i] * curvature_per_m).max(Lanes::splat(1e-3));
-        let p3 = p * p * p;
-        tension_pa[i] = curvature_per_m * 2.0 * ((tension_pa[i] - whole) / p3 + whole);
+
+    /// Normal tension at every node, `[n]`, into `tension_pa`; zero on a flat face. Stress is zero from node `active` on.
+    #[inline(always)]
+    pub fn normal_tension(&self, depth_m: &[Lanes], stress_pa: &[Lanes], active: usize, tension_pa: &mut [Lanes]) {
+        let n = depth_m.len();
+        let active = active.min(n);
+        let mut cumulative = Lanes::ZERO;
+        let mut above = stress_pa[0] * self.squared[0];
+        tension_pa[0] = Lanes::ZERO;
+        for i in 1..active {
+            let here = stress_pa[i] * self.squared[i];
+            cumulative += (above + here) * (depth_m[i] - depth_m[i - 1]) * 0.5;
+            tension_pa[i] = cumulative;
+            above = here;
+        }
+        if active < n {
+            cumulative += above * (depth_m[active] - depth_m[active - 1]) * 0.5;
+        }
+        let whole = cumulative;
+        for i in 1..active {
+            tension_pa[i] = self.two_over_radius * ((tension_pa[i] - whole) * self.inverse_cubed[i] + whole);
+        }
+        tension_pa[active..].fill(self.two_over_radius * whole);
     }
 }
 
