@@ -33,7 +33,7 @@ impl Severity {
 pub struct Diagnostic {
     /// How much it weighs.
     pub severity: Severity,
-    /// A short stable code for machines, for example `value_out_of_range`; listed in `docs/messages.md`.
+    /// A short stable code for machines, for example `value_out_of_range`; listed in `docs/inputs.md`.
     pub code: &'static str,
     /// The file as the user named it, or `standard input`.
     pub file: String,

@@ -1,4 +1,4 @@
-//! Short codes that travel with a boulder's numbers and say what they rest on. Listed in `docs/messages.md`.
+//! Short codes that travel with a boulder's numbers and say what they rest on. Listed in `docs/architecture.md`.
 
 macro_rules! flags {
     ($($(#[$meta:meta])* $variant:ident = $code:literal, $meaning:literal;)+) => {

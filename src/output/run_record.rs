@@ -152,7 +152,7 @@ pub struct RunCounts {
     pub assessed: u64,
     /// Boulders without.
     pub not_assessed: u64,
-    /// Of the latter, how many for which reason; codes as in `docs/messages.md`, and those of [`reason_code`].
+    /// Of the latter, how many for which reason; codes as in `docs/inputs.md`, and those of [`reason_code`].
     pub not_assessed_by_reason: BTreeMap<&'static str, u64>,
     /// Boulders with a source likelihood.
     pub with_source: u64,
@@ -210,7 +210,7 @@ pub struct PhaseRecord {
 pub struct DiagnosticRecord {
     /// `note`, `warning` or `refused`.
     pub severity: &'static str,
-    /// Its code, listed in `docs/messages.md`.
+    /// Its code, listed in `docs/inputs.md`.
     pub code: &'static str,
     /// The file as the user named it.
     pub file: String,
