@@ -176,7 +176,9 @@ impl Job {
         };
         let (read, name) = read_inventory(&plan.boulders, &plan.catalogue, Duplicates::LeaveToCaller, sink)?;
         refuse_duplicates(&mut features, &name);
-        doubt_heights(&mut features, &name);
+        if terrain.is_none() {
+            findings.extend(doubt_heights(&mut features, &name));
+        }
         record.input("boulders", &read.file, Some(read.records as u64));
         findings.extend(read.findings);
         for feature in &features {
@@ -391,7 +393,8 @@ fn rank(results: &mut [BoulderResult], known: &[usize], survey: &Survey) -> Vec<
     by_rank.sort_by_key(|i| rank_of[i]);
     let known_set: BTreeSet<usize> = known.iter().copied().collect();
     let mut unread: Vec<usize> = (0..results.len()).filter(|i| !known_set.contains(i)).collect();
-    unread.sort_by(|a, b| results[*a].id().cmp(results[*b].id()).then(a.cmp(b)));
+    let told_apart = |i: &usize| (results[*i].id().to_owned(), results[*i].feature.properties.as_json().to_owned());
+    unread.sort_by_cached_key(told_apart);
     // A record that could not be read may be any boulder of the run: it stands in the middle, never last.
     let middle = by_rank.len() / 2;
     order.extend(&by_rank[..middle]);
@@ -420,15 +423,17 @@ fn segment_rows(survey: &Survey, trails: &[Trail]) -> Vec<SegmentRow> {
         .collect()
 }
 
-/// Flags heights that look wrong beside the others; a doubtful height is not used, so that the raster or nothing takes its
-/// place.
-fn doubt_heights(features: &mut [BoulderFeature], file: &str) {
+/// Heights that look wrong beside the others are not used for trails, so that nothing or the raster takes their place. A
+/// boulder's own numbers and flags do not depend on its neighbours, so the doubt stands in the run record alone; where there
+/// is a raster, each height is held against that instead.
+fn doubt_heights(features: &mut [BoulderFeature], file: &str) -> Vec<Diagnostic> {
     let heights: Vec<Option<f64>> =
         features.iter().map(|f| f.boulder.as_ref().ok().and_then(|b| b.position.height_m)).collect();
+    let mut findings = Vec::new();
     for (feature, doubtful) in features.iter_mut().zip(doubtful_heights(&heights)) {
         let Ok(boulder) = &mut feature.boulder else { continue };
         if doubtful && let Some(height) = boulder.position.height_m.take() {
-            feature.remarks.push(
+            findings.push(
                 Diagnostic::new(Severity::Warning, "height_unusual", file)
                     .about("boulder", Some(&boulder.id))
                     .property("elevation_m", height.to_string())
@@ -437,6 +442,7 @@ fn doubt_heights(features: &mut [BoulderFeature], file: &str) {
             );
         }
     }
+    findings
 }
 
 fn trail_height_finding(plan: &Plan, count: usize) -> Diagnostic {

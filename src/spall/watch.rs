@@ -395,7 +395,7 @@ impl Observer for Watch<'_> {
             if !self.state[l].stripped {
                 outcome.peak_tension_pa = outcome.peak_tension_pa.max(drive.largest_pa.0[l]);
             }
-            self.see_flake(l, moment, risk.0[l], flake_depth.0[l], self.stress_pa[0].0[l], surface_k);
+            self.see_flake(l, moment, risk.0[l], flake_depth.0[l], largest.0[l], surface_k);
             if !self.state[l].rind_gone && !self.state[l].stripped {
                 self.see_rind(l, column, moment);
             }
