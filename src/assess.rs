@@ -4,6 +4,7 @@
 //! cover it. A boulder's numbers depend on its own record, those burns, the settings and the seed, and on nothing else.
 
 pub mod batch;
+pub mod cases;
 pub mod cover;
 pub mod draws;
 pub mod fires;

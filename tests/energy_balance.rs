@@ -58,18 +58,14 @@ fn run(tables: &Tables, rock: &str, body: &Body, draws: &[Draw; LANES], refine: 
     let settings = SpallSettings::default();
     let material = batch::material(draws, body, table, &table.curve, Constant::default());
     let pulse = batch::pulse(draws, &settings);
-    let residual = &table.rock.residual;
-    let tensile = |t: f64| residual.tensile_strength.factor(t);
-    let toughness = |t: f64| residual.fracture_toughness.factor(t);
-    let inputs = WatchInputs::new(draws, body, table, &table.skin, &tensile, &toughness, &settings);
+    let inputs = WatchInputs::new(draws, body, table, &table.skin, &table.strength, &settings);
     let resolution = Resolution { refine, ..Resolution::RUN };
     let whole = pulse.residence_s + pulse.decay_s * batch::DECAY_LENGTHS;
     let grid = batch::grid(draws, body, pulse.residence_s, whole, &resolution);
     let sphere = grid.curvature_per_m.0[0] > 0.0;
     let limit = Lanes::from_fn(|l| draws[l].absorbed_limit_j_m2);
     let start = Lanes::from_fn(|l| draws[l].ambient_k);
-    let mut meter =
-        Meter { watch: inputs.watch(&material, resolution.nodes), last_flux: Lanes::ZERO, integral_j_m2: Lanes::ZERO };
+    let mut meter = Meter { watch: inputs.watch(&material, &grid), last_flux: Lanes::ZERO, integral_j_m2: Lanes::ZERO };
     let (column, account) = batch::march(&material, &pulse, grid, start, limit, &resolution, &mut meter);
     let heat = column.heat_j_m2(&material) + column.removed_j_m2;
     let worst = |a: Lanes| ((a - account.absorbed_j_m2) / account.exchanged_j_m2).abs().largest();

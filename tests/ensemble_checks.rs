@@ -226,3 +226,22 @@ fn granite_flakes_more_readily_than_basalt() {
         assert!(granite > basalt, "{}: granite {granite}, basalt {basalt}", class.word());
     }
 }
+
+/// No draw sheds a flake thicker than this, m: half the thickest hot skin of any class, and ten times the field's flakes.
+const FLAKE_MAX_M: f64 = 0.05;
+
+#[test]
+fn no_draw_sheds_a_flake_thicker_than_a_hot_skin() {
+    // A face that has lost its stiffness or its plate carries no stress; the energy floor must not be taken there.
+    let model = model(512, 1);
+    let mut flaked = 0;
+    for rock in ["granite", "limestone", "basalt", "sandstone"] {
+        for class in [ExposureClass::Crown, ExposureClass::HeavyDeadWood, ExposureClass::LogContact] {
+            let (_, draws) = model.assess_with_draws(&boulder(rock, 0.5, class), &[]);
+            let thickest = draws.iter().map(|d| d.flake_m).fold(0.0, f64::max);
+            assert!(thickest < FLAKE_MAX_M, "{rock} {}: {thickest} m", class.word());
+            flaked += draws.iter().filter(|d| d.flake_m > 0.0).count();
+        }
+    }
+    assert!(flaked > 1000, "the test needs flakes to look at, got {flaked}");
+}

@@ -63,14 +63,11 @@ fn march(draws: &[Draw; LANES], body: &Body, table: &RockTable, resolution: &Res
     let settings = SpallSettings::default();
     let material = batch::material(draws, body, table, &table.curve, Constant::default());
     let pulse = batch::pulse(draws, &settings);
-    let residual = &table.rock.residual;
-    let tensile = |t: f64| residual.tensile_strength.factor(t);
-    let toughness = |t: f64| residual.fracture_toughness.factor(t);
-    let inputs = WatchInputs::new(draws, body, table, &table.skin, &tensile, &toughness, &settings);
+    let inputs = WatchInputs::new(draws, body, table, &table.skin, &table.strength, &settings);
     let whole = pulse.residence_s + pulse.decay_s * batch::DECAY_LENGTHS;
     let grid = batch::grid(draws, body, pulse.residence_s, whole, resolution);
     let mut recorder =
-        Recorder { watch: inputs.watch(&material, resolution.nodes), face_k: Vec::new(), time_s: Vec::new(), at_least };
+        Recorder { watch: inputs.watch(&material, &grid), face_k: Vec::new(), time_s: Vec::new(), at_least };
     let start = Lanes::from_fn(|l| draws[l].ambient_k);
     let limit = Lanes::splat(f64::INFINITY);
     let (_, account) = batch::march(&material, &pulse, grid, start, limit, resolution, &mut recorder);

@@ -10,6 +10,7 @@ use jiff::ToSpan;
 use jiff::civil::Date;
 use rayon::prelude::*;
 
+use spallcast::assess::cases::Cases;
 use spallcast::assess::cover::{Burned, Cover};
 use spallcast::assess::{Assessment, Model};
 use spallcast::diagnostic::{Diagnostic, Severity};
@@ -65,6 +66,7 @@ pub fn run_plan(plan: Plan) -> Result<Exit, Stop> {
 /// What is the same for every boulder of a run.
 struct Shared<'a> {
     model: &'a Model,
+    cases: Cases<'a>,
     burns: &'a [Burn],
     burned: Burned<'a>,
     terrain: Option<&'a Terrain>,
@@ -93,7 +95,8 @@ impl Shared<'_> {
         let within =
             covering.iter().filter_map(|burn| self.burns.iter().position(|b| std::ptr::eq(b, *burn))).collect();
         let placed = place(boulder, self.terrain, &self.model.settings.rockfall);
-        let (mut assessment, draws) = self.model.assess_with_draws(boulder, &covering);
+        let case = self.cases.solve(boulder, &covering);
+        let mut assessment = case.assessment.clone();
         if covers.iter().any(|(_, cover)| *cover == Cover::Edge) {
             assessment.flags.insert(Flag::OnBurnEdge);
         }
@@ -103,7 +106,7 @@ impl Shared<'_> {
         if feature.remarks.iter().any(|r| r.code == "number_as_text") {
             assessment.flags.insert(Flag::NumberAsText);
         }
-        let source = (!draws.is_empty()).then(|| self.model.source(boulder, &placed, &draws));
+        let source = (!case.draws.is_empty()).then(|| self.model.source(boulder, &placed, &case.draws));
         Worked { assessment, source, placed: Some(placed), within, feature }
     }
 }
@@ -205,8 +208,13 @@ impl Job {
         let clock_run = Instant::now();
         let model =
             Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
-        let shared =
-            Shared { model: &model, burns: &burns.burns, burned: Burned::new(&burns.burns), terrain: terrain.as_ref() };
+        let shared = Shared {
+            model: &model,
+            cases: Cases::new(&model),
+            burns: &burns.burns,
+            burned: Burned::new(&burns.burns),
+            terrain: terrain.as_ref(),
+        };
         let bar = progress(features.len() as u64, messages);
         let worked: Vec<Worked> = features
             .into_par_iter()
@@ -331,8 +339,13 @@ fn stream(plan: Plan, messages: &Messages) -> Result<Exit, Stop> {
         .transpose()?
         .map(|read| read.terrain);
     let model = Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
-    let shared =
-        Shared { model: &model, burns: &burns.burns, burned: Burned::new(&burns.burns), terrain: terrain.as_ref() };
+    let shared = Shared {
+        model: &model,
+        cases: Cases::new(&model),
+        burns: &burns.burns,
+        burned: Burned::new(&burns.burns),
+        terrain: terrain.as_ref(),
+    };
     let mut out = std::io::BufWriter::new(std::io::stdout().lock());
     let mut chunk: Vec<BoulderFeature> = Vec::with_capacity(STREAM_CHUNK);
     let mut counts = RunCounts::default();
