@@ -1,0 +1,13 @@
+// Puts the parts to work. The first screen stands without any of this.
+document.querySelectorAll("canvas.key").forEach((c) => {
+  const draw = () => { const r = Math.max(1, devicePixelRatio || 1); c.width = c.height = 26 * r; const p = c.getContext("2d"); p.scale(r, r); p.translate(13, 13); MAP.sprite_on(p, c.dataset.key); };
+  draw();
+  matchMedia("(prefers-color-scheme: dark)").addEventListener("change", draw);
+  addEventListener("beforeprint", draw); addEventListener("afterprint", draw);
+});
+document.querySelectorAll("[data-stretch]").forEach((b) => b.addEventListener("click", () => select("stretch", Number(b.dataset.stretch), "first")));
+document.querySelectorAll("[data-boulder]").forEach((b) => b.addEventListener("click", () => select("boulder", Number(b.dataset.boulder), "first")));
+STATE.classes = DATA.boulders.rows.map((_, row) => class_of(row));
+TABLE.filter();
+MAP.resize();
+document.documentElement.classList.add("ready");
