@@ -215,7 +215,8 @@ fn made(mut case: Case) -> String {
         features.push(f);
         ControlFlow::Continue(())
     };
-    read_boulders_from(lines.as_bytes(), "-", &Catalogue::embedded(), Duplicates::LeaveToCaller, sink).expect("boulders");
+    read_boulders_from(lines.as_bytes(), "-", &Catalogue::embedded(), Duplicates::LeaveToCaller, sink)
+        .expect("boulders");
     assert_eq!(features.len(), case.boulders.len());
 
     let settings = Settings::default();
@@ -272,7 +273,11 @@ fn rows(trails: &[spallcast::site::Trail], results: &[BoulderResult]) -> Vec<Seg
                 combined: known.then_some(combined),
                 people: known.then_some(people),
                 boulder_ids: ids,
-                decision: Decision { proposal, reason: "made for the test".to_owned(), reopens_when: "never".to_owned() },
+                decision: Decision {
+                    proposal,
+                    reason: "made for the test".to_owned(),
+                    reopens_when: "never".to_owned(),
+                },
                 horizon_days: 180.0,
                 review_on: jiff::civil::date(2026, 10, 21),
             },
@@ -296,15 +301,30 @@ fn column(data: &Value, name: &str) -> usize {
 
 fn loads(page: &str) -> Vec<&'static str> {
     let ways = [
-        "http://", "https://", "src=", "@import", "url(http", "url(//", "<link", "<iframe", "fetch(", "XMLHttpRequest",
-        "WebSocket", "sendBeacon", "import(",
+        "http://",
+        "https://",
+        "src=",
+        "@import",
+        "url(http",
+        "url(//",
+        "<link",
+        "<iframe",
+        "fetch(",
+        "XMLHttpRequest",
+        "WebSocket",
+        "sendBeacon",
+        "import(",
     ];
     ways.into_iter().filter(|w| page.contains(w)).collect()
 }
 
 #[test]
 fn the_page_loads_nothing_and_stays_small() {
-    assert_eq!(loads("<script src=\"https://example.org/a.js\">"), ["https://", "src="], "the rule sees a planted fault");
+    assert_eq!(
+        loads("<script src=\"https://example.org/a.js\">"),
+        ["https://", "src="],
+        "the rule sees a planted fault"
+    );
     let page = made(large("demo-sized", DEMO_BOULDERS));
     assert_eq!(loads(&page), Vec::<&str>::new());
     assert!(page.contains("default-src 'none'"), "the page's own policy forbids requests");

@@ -43,8 +43,7 @@ const CHARTS = (() => {
     if (!rows.length) return nothing("chart-residence", "No boulder has both a fire and a likelihood.");
     const choice = h("select", { id: "residence-figure" }, [["p_spall", "likelihood of spalling"], ["p_source", "source likelihood"]].map(([v, t]) => h("option", { value: v }, t)));
     const place = h("div");
-    add(home, [h("label", { for: "residence-figure" }, "Figure "), choice, place, h("p", { class: "note" }, "Filled: residence recorded for the boulder or its burn. Hollow: median of the exposure class, nothing recorded. Cross: choosing a mark shows the boulder.")]);
-    home.querySelector(".note").textContent = "Filled disc: residence recorded for the boulder or its burn. Hollow square: median of the exposure class, nothing recorded. Beyond 2,000 boulders every n-th is drawn.";
+    add(home, [h("label", { for: "residence-figure" }, "Figure "), choice, place, h("p", { class: "note" }, "Filled disc: residence recorded for the boulder or its burn. Hollow square: median of the exposure class, nothing recorded. Beyond 2,000 boulders every n-th is drawn.")]);
     function show() {
       const name = choice.value, all = rows.filter((row) => typeof boulder(row, name) === "number"), skip = Math.ceil(all.length / 2000);
       const svg = frame(330, choice.selectedOptions[0].textContent + " against fire residence time"), t = (row) => Math.max(0.02, DATA.boulders.residence[row][0]);
@@ -79,7 +78,7 @@ const CHARTS = (() => {
       if (typeof value("p_release") === "number") svg.append(s("path", { d: `M${x(value("p_release"))} ${y - 6}l6 10h-12z`, class: "drive-1" }));
       if (typeof value("p_fragment") === "number") svg.append(s("rect", { x: x(value("p_fragment")) - 4, y: y - 4, width: 8, height: 8, class: "drive-2" }));
       const mode = value("source_mode"), how = mode ? "would most likely " + (mode === "fragment" ? "shed a loose piece" : mode) : "no source likelihood";
-      svg.append(text(left, y + 20, how + (heavy === null ? "; no trail stretch names it" : `; stretches: ${NAMED_BY[row].length}, heaviest “${PROPOSALS[heavy].word}”`), "axis", "start"));
+      svg.append(text(left, y + 20, how + (heavy === null ? "; no trail stretch names it" : `; stretches: ${NAMED_BY[row].length}, heaviest “${PROPOSALS[heavy].word}”`), "axis halo", "start"));
     });
     svg.append(text((left + W) / 2, foot + 36, "likelihood within the horizon", "axis strong"));
     add(by_id("chart-drivers"), [svg, h("p", { class: "note" }, "Bar with tick: source likelihood with its 95 % interval. Disc: spalling. Triangle: the boulder itself moves. Square: a loose piece moves. Exposure of people on the trails sets the order of inspection.")]);
@@ -89,7 +88,7 @@ const CHARTS = (() => {
     const list = DATA.profiles, home = by_id("chart-depth");
     if (!list.length) return nothing("chart-depth", "No depth profiles were stored with this run. “spallcast probe --id NAME” computes one boulder through time and depth.");
     const choice = h("select", { id: "depth-boulder" }, list.map((p, i) => h("option", { value: i }, p.id))), place = h("div", { class: "pair" });
-    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Marks on the depth axis: events with their time.")]);
+    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
     const DASH = ["", "8 3", "2 3", "10 3 2 3", "5 5", "1 4"];
     function show() {
       const p = list[choice.value]; place.replaceChildren();
@@ -109,7 +108,12 @@ const CHARTS = (() => {
           const at = Math.min(p.depth_mm.length - 1, Math.round(((i + 1) / (picks.length + 1)) * p.depth_mm.length * 0.5));
           if (grid[k][at] !== null) svg.append(text(x(grid[k][at]) + 6, y(p.depth_mm[at]), clock(p.times_s[k]), "axis halo", "start"));
         });
-        (p.events || []).forEach((e) => { if (typeof e.depth_mm === "number" && e.depth_mm <= deep) svg.append(s("path", { d: `M52 ${y(e.depth_mm)}l-9 -5v10z`, class: "event" }, s("title", {}, `${e.family} at ${clock(e.time_s)}, ${significant(e.depth_mm, 3)} mm`)), text(56, y(e.depth_mm) - 4, `${e.family}, ${clock(e.time_s)}`, "axis halo strong", "start")); });
+        (p.events || []).forEach((e) => {
+          if (typeof e.depth_mm !== "number" || e.depth_mm > deep) return;
+          const at = y(e.depth_mm);
+          svg.append(line(52, at, W - 32, at, "event-line"), s("path", { d: `M${W - 32} ${at}l9 -5v10z`, class: "event" }),
+            text(W - 36, at - 4, `${e.family}, ${significant(e.depth_mm, 2)} mm at ${clock(e.time_s)}`, "axis halo strong", "end"));
+        });
         place.append(svg);
       }
     }

@@ -126,54 +126,68 @@ const MAP = (() => {
       pen.strokeStyle = ink("--burn"); pen.setLineDash([7, 3]);
       pen.lineWidth = chosen && chosen.kind === "burn" && chosen.row === i ? 3.5 : 1.4; pen.stroke(); pen.setLineDash([]); pen.globalAlpha = 1;
     });
-    draw_trails(); draw_boulders(); draw_names(); draw_chosen(); draw_scale();
+    // Places that names must leave free: scale, north arrow, buttons.
+    taken = [[80, height - 20, 90], [width - 24, 32, 20], [30, 27, 24], [30, 65, 24], [30, 103, 24]];
+    draw_trails(); draw_boulders(); draw_chosen(); draw_names(); draw_scale();
   }
 
+  // A casing, the colour, then the pattern that says the same without colour; false where there is no pattern.
   const WIDTHS = [9, 7, 5, 3, 9];
+  function line_style(p, at, pass) {
+    if (pass === 2 && at === 3) return false;
+    p.strokeStyle = pass === 0 ? ink("--ink") : pass === 1 ? ink("--proposal-" + at) : at === 4 ? "#000" : ink("--proposal-ink");
+    p.lineWidth = pass === 0 ? WIDTHS[at] + 2.4 : pass === 1 ? WIDTHS[at] : [3, 7, 1.5, 0, 9][at];
+    p.setLineDash(pass === 2 ? [[], [2, 7], [4, 4], [], [2, 3]][at] : []);
+    return true;
+  }
+  function trail_on(p, at) {
+    for (const pass of [0, 1, 2]) if (line_style(p, at, pass)) { p.beginPath(); p.moveTo(1, 7); p.lineTo(43, 7); p.stroke(); }
+  }
   function draw_trails() {
     pen.lineCap = "butt"; pen.lineJoin = "round";
     const wanted = STATE.filter.proposal;
     for (const pass of [0, 1, 2]) DATA.trails.lines.forEach((line, i) => {
       const at = proposal_at(stretch(i, "proposal"));
       pen.globalAlpha = wanted && wanted !== PROPOSALS[at].word ? 0.18 : 1;
-      pen.beginPath(); trace(line, false);
-      if (pass === 0) { pen.strokeStyle = ink("--ink"); pen.lineWidth = WIDTHS[at] + 2.4; pen.setLineDash([]); }
-      if (pass === 1) { pen.strokeStyle = ink("--proposal-" + at); pen.lineWidth = WIDTHS[at]; pen.setLineDash([]); }
-      if (pass === 2) {
-        if (at === 3) return;
-        pen.strokeStyle = at === 4 ? "#000" : ink("--proposal-ink"); pen.lineWidth = [3, 7, 1.5, 0, 9][at];
-        pen.setLineDash([[], [2, 7], [4, 4], [], [2, 3]][at]);
-      }
-      pen.stroke();
+      if (!line_style(pen, at, pass)) return;
+      pen.beginPath(); trace(line, false); pen.stroke();
     });
     pen.setLineDash([]); pen.globalAlpha = 1;
   }
   function draw_boulders() {
-    const half = 15;
+    // Where boulders crowd, marks shrink to half; none is left out.
+    const seen = STATE.drawn.reduce((n, row) => n + (Math.abs(to_x(X[row]) - width / 2) < width / 2 && Math.abs(to_y(Y[row]) - height / 2) < height / 2 ? 1 : 0), 0);
+    const half = 15 * Math.max(0.5, Math.min(1, Math.sqrt((width * height) / Math.max(1, seen)) / 45)), size = 2 * half;
     for (const row of STATE.drawn) {
       const x = to_x(X[row]), y = to_y(Y[row]);
       if (x < -half || y < -half || x > width + half || y > height + half) continue;
-      pen.drawImage(sprite(STATE.classes[row]), x - half, y - half, 30, 30);
+      pen.drawImage(sprite(STATE.classes[row]), x - half, y - half, size, size);
     }
   }
+  let taken = [];
   function label(text, x, y, bold) {
     if (x < 0 || y < 0 || x > width || y > height) return;
     pen.font = (bold ? "600 " : "") + "12px " + ink("--sans");
     pen.textAlign = "center"; pen.textBaseline = "middle"; pen.lineWidth = 4; pen.lineJoin = "round";
+    const wide = pen.measureText(text).width / 2 + 4;
+    x = Math.max(wide, Math.min(width - wide, x));
+    // A name that would lie on another is left out until there is room.
+    if (taken.some((b) => Math.abs(b[0] - x) < b[2] + wide && Math.abs(b[1] - y) < 15)) return;
+    taken.push([x, y, wide]);
     pen.strokeStyle = ink("--field"); pen.strokeText(text, x, y); pen.fillStyle = ink("--ink"); pen.fillText(text, x, y);
   }
   const short = (text) => (text.length > 28 ? text.slice(0, 27) + "…" : text);
   function draw_names() {
-    DATA.burns.rings.forEach((rings, i) => {
-      const ring = rings[0]; if (!ring || !ring.length) return;
-      let top = 0; for (let k = 0; k < ring.length; k += 2) if (ring[k + 1] > ring[top + 1]) top = k;
-      label("burn " + short(DATA.burns.names[i]), to_x(ring[top]), to_y(ring[top + 1]) - 9, true);
-    });
     let last = null;
     DATA.trails.lines.forEach((line, i) => {
       const id = stretch(i, "trail_id");
       if (id !== last && line.length) label("trail " + short(id), to_x(line[0]), to_y(line[1]) + 14, true);
       last = id;
+    });
+    DATA.burns.rings.forEach((rings, i) => {
+      const ring = rings[0]; if (!ring || !ring.length) return;
+      let top = 0; for (let k = 0; k < ring.length; k += 2) if (ring[k + 1] > ring[top + 1]) top = k;
+      label("burn " + short(DATA.burns.names[i]), to_x(ring[top]), to_y(ring[top + 1]) - 9, true);
     });
   }
   function draw_chosen() {
@@ -336,5 +350,5 @@ const MAP = (() => {
   addEventListener("beforeprint", () => { document.documentElement.classList.add("printing"); sprites = {}; resize(); });
   addEventListener("afterprint", () => { document.documentElement.classList.remove("printing"); sprites = {}; resize(); });
   if (typeof ResizeObserver === "function") new ResizeObserver(resize).observe(frame);
-  return { resize, sprite_on: (p, key) => mark(p, key), screen: (row) => [to_x(X[row]), to_y(Y[row])], view: () => view };
+  return { resize, sprite_on: mark, trail_on, screen: (row) => [to_x(X[row]), to_y(Y[row])], view: () => view };
 })();
