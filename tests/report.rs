@@ -329,6 +329,7 @@ fn the_page_loads_nothing_and_stays_small() {
     assert_eq!(loads(&page), Vec::<&str>::new());
     assert!(page.contains("default-src 'none'"), "the page's own policy forbids requests");
     assert!(page.len() < DEMO_BYTES, "{} bytes", page.len());
+    assert!(!page.to_lowercase().contains("safe"), "the page promises nothing");
 }
 
 #[test]

@@ -1,4 +1,4 @@
-// Data access, formatting and element helpers. Text enters the page through text nodes and attributes only.
+// Data access, formatting, and the making of elements. Text enters the page through text nodes and attributes only.
 const DATA = JSON.parse(document.getElementById("data").textContent);
 const WORDS = DATA.strings;
 const SVG_SPACE = document.querySelector("svg").namespaceURI;
@@ -81,7 +81,17 @@ const heading = (field) => {
   return unit && unit !== "°" ? `${field.label} (${unit})` : field.label;
 };
 const metres = (x) => x.toLocaleString("en-GB", { maximumFractionDigits: 1 });
-const ink = (name) => getComputedStyle(document.documentElement).getPropertyValue(name).trim();
+// Colours and fonts of the style sheet, read once until the theme changes.
+const INKS = new Map();
+function ink(name) {
+  if (!INKS.has(name)) INKS.set(name, getComputedStyle(document.documentElement).getPropertyValue(name).trim());
+  return INKS.get(name);
+}
+matchMedia("(prefers-color-scheme: dark)").addEventListener("change", () => INKS.clear());
+for (const moment of ["beforeprint", "afterprint"]) addEventListener(moment, () => {
+  document.documentElement.classList.toggle("printing", moment === "beforeprint");
+  INKS.clear();
+});
 
 // Classes of the map: the same limits, words and colours as in the legend.
 const CLASSES = DATA.classes;
@@ -96,6 +106,8 @@ function class_of(row) {
 }
 const proposal_at = (word) => PROPOSALS.findIndex((p) => p.word === word);
 
+// More boulders than this are a crowd on the map.
+const CROWD = 3000;
 // What is shown and selected; every part of the page listens.
 const STATE = { shown: [], filter: {}, selected: null };
 const LISTENERS = [];

@@ -88,6 +88,8 @@ const MAP = (() => {
   }
 
   function hatch(i) {
+    const key = "hatch" + (i % 4);
+    if (sprites[key]) return sprites[key];
     const size = 12, made = document.createElement("canvas");
     made.width = made.height = size * ratio;
     const p = made.getContext("2d"), [dx, dy] = [[1, 1], [1, -1], [1, 0], [0, 1]][i % 4];
@@ -95,13 +97,13 @@ const MAP = (() => {
     p.beginPath();
     for (const k of [-1, 0, 1]) {
       const ox = dx && dy ? k * size : dx ? 0 : size / 2, oy = dx && dy ? 0 : dy ? 0 : size / 2;
-      p.moveTo(ox - (dx && dy ? 0 : 0), dy < 0 ? size - oy : oy);
+      p.moveTo(ox, dy < 0 ? size - oy : oy);
       p.lineTo(ox + dx * size, (dy < 0 ? size : oy) + dy * size);
     }
     p.stroke();
     const pattern = pen.createPattern(made, "repeat");
     pattern.setTransform(new DOMMatrix().scale(1 / ratio));
-    return pattern;
+    return (sprites[key] = pattern);
   }
   function trace(flat, close) {
     for (let i = 0; i < flat.length; i += 2) {
@@ -128,7 +130,9 @@ const MAP = (() => {
     });
     // Places that names must leave free: scale, north arrow, buttons.
     taken = [[80, height - 20, 90], [width - 24, 32, 20], [30, 27, 24], [30, 65, 24], [30, 103, 24]];
-    draw_trails(); draw_boulders(); draw_chosen(); draw_names(); draw_scale();
+    // In a crowd the trails lie on top, so that their proposals stay readable.
+    if (STATE.drawn.length > CROWD) { draw_boulders(); draw_trails(); } else { draw_trails(); draw_boulders(); }
+    draw_chosen(); draw_names(); draw_scale();
   }
 
   // A casing, the colour, then the pattern that says the same without colour; false where there is no pattern.
@@ -154,14 +158,22 @@ const MAP = (() => {
     });
     pen.setLineDash([]); pen.globalAlpha = 1;
   }
+  const KEYS = [...CLASSES.map((c) => c.key), "no-source", "unknown"];
   function draw_boulders() {
     // Where boulders crowd, marks shrink to half; none is left out.
     const seen = STATE.drawn.reduce((n, row) => n + (Math.abs(to_x(X[row]) - width / 2) < width / 2 && Math.abs(to_y(Y[row]) - height / 2) < height / 2 ? 1 : 0), 0);
     const half = 15 * Math.max(0.5, Math.min(1, Math.sqrt((width * height) / Math.max(1, seen)) / 45)), size = 2 * half;
+    // Of equal marks within four pixels of one another one is drawn, in crowds only: the picture stays the same.
+    const thin = seen > CROWD, columns = Math.ceil(width / 4) + 16, drawn = thin ? new Uint8Array(columns * (Math.ceil(height / 4) + 16) * KEYS.length) : null;
     for (const row of STATE.drawn) {
-      const x = to_x(X[row]), y = to_y(Y[row]);
+      const x = to_x(X[row]), y = to_y(Y[row]), key = STATE.classes[row];
       if (x < -half || y < -half || x > width + half || y > height + half) continue;
-      pen.drawImage(sprite(STATE.classes[row]), x - half, y - half, size, size);
+      if (thin) {
+        const place = (Math.floor((y + half) / 4) * columns + Math.floor((x + half) / 4)) * KEYS.length + KEYS.indexOf(key);
+        if (drawn[place]) continue;
+        drawn[place] = 1;
+      }
+      pen.drawImage(sprite(key), x - half, y - half, size, size);
     }
   }
   let taken = [];
@@ -346,9 +358,8 @@ const MAP = (() => {
     redraw();
   });
   matchMedia("(prefers-color-scheme: dark)").addEventListener("change", () => { sprites = {}; redraw(); });
-  matchMedia("print").addEventListener("change", () => { sprites = {}; resize(); });
-  addEventListener("beforeprint", () => { document.documentElement.classList.add("printing"); sprites = {}; resize(); });
-  addEventListener("afterprint", () => { document.documentElement.classList.remove("printing"); sprites = {}; resize(); });
+  addEventListener("beforeprint", resize);
+  addEventListener("afterprint", resize);
   if (typeof ResizeObserver === "function") new ResizeObserver(resize).observe(frame);
   return { resize, sprite_on: mark, trail_on, screen: (row) => [to_x(X[row]), to_y(Y[row])], view: () => view };
 })();
