@@ -1,7 +1,7 @@
 // Charts in SVG, from the same figures as the layers.
 const CHARTS = (() => {
-  const W = 560;
-  const frame = (height, label) => s("svg", { viewBox: `0 0 ${W} ${height}`, role: "img", "aria-label": label });
+  const W = 440;
+  const frame = (height, label, wide) => s("svg", { viewBox: `0 0 ${wide || W} ${height}`, role: "img", "aria-label": label });
   const text = (x, y, words, kind, anchor) => s("text", { x, y, class: kind || "axis", "text-anchor": anchor || "middle" }, words);
   const line = (x1, y1, x2, y2, kind) => s("line", { x1, y1, x2, y2, class: kind });
   const numbers = (name) => DATA.boulders.rows.map((_, row) => boulder(row, name)).filter((v) => typeof v === "number" && isFinite(v));
@@ -11,7 +11,7 @@ const CHARTS = (() => {
     for (let e = Math.floor(Math.log10(low)); e <= Math.ceil(Math.log10(high)); e++) for (const k of [1, 2, 5]) {
       const v = k * 10 ** e; if (v < low || v > high) continue;
       svg.append(line(x(v), y, x(v), foot, "grid"));
-      if (k === 1 || high / low < 200) svg.append(text(x(v), foot + 16, significant(v, 2)));
+      if (k === 1 || high / low < 100) svg.append(text(x(v), foot + 16, significant(v, 2)));
     }
   }
 
@@ -68,7 +68,7 @@ const CHARTS = (() => {
   function drivers() {
     const top = DATA.boulders.rows.map((_, row) => row).filter((row) => boulder(row, "status") === "assessed").slice(0, 10);
     if (!top.length) return nothing("chart-drivers", "No boulder was assessed.");
-    const tall = 40, foot = 14 + top.length * tall, left = 104, svg = frame(foot + 44, "What drives the ten assessed boulders that come first in the order of inspection"), x = (p) => left + p * (W - left - 20);
+    const tall = 40, foot = 14 + top.length * tall, left = 92, svg = frame(foot + 44, "What drives the ten assessed boulders that come first in the order of inspection"), x = (p) => left + p * (W - left - 20);
     for (const p of [0, 0.25, 0.5, 0.75, 1]) svg.append(line(x(p), 6, x(p), foot, "grid"), text(x(p), foot + 16, p * 100 + " %"));
     top.forEach((row, i) => {
       const y = 20 + i * tall, value = (name) => boulder(row, name), name = boulder_name(row), heavy = heaviest(row);
@@ -77,15 +77,15 @@ const CHARTS = (() => {
       if (typeof value("p_spall") === "number") svg.append(s("circle", { cx: x(value("p_spall")), cy: y, r: 4.5, class: "drive-0" }));
       if (typeof value("p_release") === "number") svg.append(s("path", { d: `M${x(value("p_release"))} ${y - 6}l6 10h-12z`, class: "drive-1" }));
       if (typeof value("p_fragment") === "number") svg.append(s("rect", { x: x(value("p_fragment")) - 4, y: y - 4, width: 8, height: 8, class: "drive-2" }));
-      const mode = value("source_mode"), how = mode ? "would most likely " + (mode === "fragment" ? "shed a loose piece" : mode) : "no source likelihood";
-      svg.append(text(left, y + 20, how + (heavy === null ? "; no trail stretch names it" : `; stretches: ${NAMED_BY[row].length}, heaviest “${PROPOSALS[heavy].word}”`), "axis halo", "start"));
+      const mode = value("source_mode"), how = mode ? (mode === "fragment" ? "may shed a piece" : "may " + mode) : "no source likelihood";
+      svg.append(text(left, y + 20, how + (heavy === null ? "; no stretch names it" : `; ${NAMED_BY[row].length} stretches, at worst ${PROPOSALS[heavy].word}`), "axis halo", "start"));
     });
     svg.append(text((left + W) / 2, foot + 36, "likelihood within the horizon", "axis strong"));
-    add(by_id("chart-drivers"), [svg, h("p", { class: "note" }, "Bar with tick: source likelihood with its 95 % interval. Disc: spalling. Triangle: the boulder itself moves. Square: a loose piece moves. Exposure of people on the trails sets the order of inspection.")]);
+    add(by_id("chart-drivers"), [svg, h("p", { class: "note" }, "Bar with tick: source likelihood with its 95 % interval. Disc: spalling. Triangle: the boulder itself moves. Square: a loose piece moves. The line below names its most likely movement. Exposure of people on the trails sets the order of inspection.")]);
   }
 
   function depths() {
-    const list = DATA.profiles, home = by_id("chart-depth");
+    const W = 560, list = DATA.profiles, home = by_id("chart-depth");
     if (!list.length) return nothing("chart-depth", "No depth profiles were stored with this run. “spallcast probe --id NAME” computes one boulder through time and depth.");
     const choice = h("select", { id: "depth-boulder" }, list.map((p, i) => h("option", { value: i }, p.id))), place = h("div", { class: "pair" });
     add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
@@ -94,7 +94,7 @@ const CHARTS = (() => {
       const p = list[choice.value]; place.replaceChildren();
       for (const [key, words, unit] of [["temperature_c", "temperature", "°C"], ["skin_stress_mpa", "compression along the face", "MPa"]]) {
         const grid = p[key]; if (!grid.length) continue;
-        const svg = frame(380, `${words} through depth of boulder ${p.id}`);
+        const svg = frame(380, `${words} through depth of boulder ${p.id}`, W);
         const all = grid.flat().filter((v) => v !== null && isFinite(v)), deep = Math.max(...p.depth_mm), low = Math.min(0, ...all), high = Math.max(1, ...all);
         const x = (v) => 52 + ((v - low) / (high - low)) * (W - 84), y = (d) => 40 + Math.sqrt(d / deep) * 318;
         const step = [0.5, 1, 2, 5, 10, 20, 50, 100, 200, 500, 1000].find((k) => (high - low) / k <= 7) || 2000;
