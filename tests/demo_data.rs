@@ -53,7 +53,7 @@ fn burns_cover_every_class_and_every_way_to_describe_a_fire() {
 #[test]
 fn boulders_are_many_varied_and_incomplete() {
     let boulders = features(BOULDERS);
-    assert_eq!(boulders.len(), 468);
+    assert_eq!(boulders.len(), 482);
     assert!(words(&boulders, "rock").len() >= 18, "names and aliases");
     assert_eq!(words(&boulders, "support").len(), 5);
     assert_eq!(words(&boulders, "weathering").len(), 4);
