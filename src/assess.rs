@@ -9,7 +9,9 @@ pub mod cover;
 pub mod draws;
 pub mod fires;
 pub mod probe;
+pub mod sensitivity;
 pub mod slope;
+pub mod standing;
 pub mod summary;
 pub mod tables;
 

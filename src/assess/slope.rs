@@ -23,7 +23,7 @@ pub fn fire_coordinates(points: &PointSet) -> Vec<f64> {
 
 /// What one draw means for the statics. The chance that the base lies in what came off is the heated share, times the
 /// slabbed share of it where a slab or rind came off.
-fn spall_draw(draw: &DrawSummary, fire_severity_u: f64) -> SpallDraw {
+pub(super) fn spall_draw(draw: &DrawSummary, fire_severity_u: f64) -> SpallDraw {
     let plates = draw.slabs_sum_m.max(draw.rind_m);
     let (base_retreat_m, share) = if plates > 0.0 { (plates, draw.slab_share) } else { (draw.flake_m, 1.0) };
     let split = draw.split_m > 0.0;

@@ -138,7 +138,7 @@ pub struct ProbeArgs {
     /// Times to report, s, ascending.
     #[arg(long, value_name = "LIST", value_delimiter = ',')]
     pub times_s: Option<Vec<f64>>,
-    /// Run the ensemble of this many draws beside the medians.
+    /// Run the ensemble of this many draws beside the medians. A boulder of an inventory with a slope runs it anyway.
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(16..=65_536))]
     pub draws: Option<u64>,
     /// Seed of the ensemble [default: 1].

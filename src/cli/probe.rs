@@ -9,14 +9,23 @@ use spallcast::assess::cover::Burned;
 use spallcast::assess::draws::Body;
 use spallcast::assess::fires::fires_at;
 use spallcast::assess::probe::{self, Fixed, History, INITIAL_K};
+use spallcast::assess::standing::{Surroundings, statics};
+use spallcast::assess::summary::DrawSummary;
 use spallcast::bounds::bound;
 use spallcast::fire::exposure::ExposureClass;
-use spallcast::input::{Duplicates, read_boulders, read_burns, read_series, read_settings};
+use spallcast::input::terrain::read_terrain;
+use spallcast::input::{Duplicates, read_boulders, read_burns, read_series, read_settings, read_trails};
+use spallcast::output::probe_source::Standing;
 use spallcast::output::probe_table::{self, EnsembleRun, Subject};
 use spallcast::rock::Property;
 use spallcast::rock::catalogue::Catalogue;
+use spallcast::rockfall::place::{Placed, place};
+use spallcast::rockfall::release::StaticsInputs;
+use spallcast::rockfall::source::SourceBasis;
+use spallcast::rockfall::terrain::Terrain;
 use spallcast::settings::Settings;
-use spallcast::site::{Boulder, Burn, HeatingRecord, Kind, Position, RockChoice, StandingRecord};
+use spallcast::site::{Boulder, Burn, HeatingRecord, Kind, Position, RockChoice, StandingRecord, Trail};
+use spallcast::trail::judge::Judged;
 use spallcast::units::{ICE_POINT_K, MM_PER_M, SECONDS_PER_MINUTE, W_PER_KW};
 
 use super::args::ProbeArgs;
@@ -40,8 +49,22 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
         .collect();
     let time_s = ascending("--times-s", args.times_s.as_deref().unwrap_or(&[]), 0.0, 1e8)?;
 
+    let terrain = args
+        .inputs
+        .terrain
+        .as_ref()
+        .map(|path| read_terrain(path).map_err(|e| Stop::Failed(e.to_string())))
+        .transpose()?
+        .map(|read| read.terrain);
+    let trails = args.inputs.trails.as_deref().map(read_trails).transpose()?.map(|read| read.trails);
+    let placed = place(&boulder, terrain.as_ref(), &settings.rockfall);
+    // A boulder of an inventory whose standing is known is a source: that takes the ensemble, with or without --draws.
+    let stands = args.id.is_some()
+        && args.series.is_none()
+        && StaticsInputs::of(&boulder, placed.raster_slope_deg).basis() != SourceBasis::None;
     // The medians need no points of their own: the smallest set will do.
-    let wanted_draws = args.draws.map(|d| Settings::whole_replicates(d as usize));
+    let default_draws = stands.then_some(settings.draws);
+    let wanted_draws = args.draws.map(|d| d as usize).or(default_draws).map(Settings::whole_replicates);
     settings.draws = wanted_draws.unwrap_or(Settings::REPLICATES);
     settings.seed = args.seed.unwrap_or(settings.seed);
     let model = Model::new(settings, catalogue).map_err(|e| Stop::Failed(e.to_string()))?;
@@ -108,14 +131,17 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
     // On the medians a plate stays where it is, so that one history is followed.
     spall.slab_leaves_probability = 0.0;
     let result = probe::run(table, &body, &history, &median, &depth_m, &time_s, &spall);
-    let ensemble = match (wanted_draws, &args.series) {
+    let (ensemble, standing) = match (wanted_draws, &args.series) {
         (Some(_), Some(_)) => {
             return Err(Stop::Usage("--draws samples the fire too and cannot be combined with --series".to_owned()));
         }
         (Some(draws), None) => {
-            Some(EnsembleRun { draws, seed: model.settings.seed, assessment: model.assess(&boulder, &covering) })
+            let (assessment, summaries) = model.assess_with_draws(&boulder, &covering);
+            let around = Around { placed, trails: trails.as_deref(), terrain: terrain.as_ref() };
+            let standing = args.id.is_some().then(|| standing(&model, &boulder, &covering, &summaries, around));
+            (Some(EnsembleRun { draws, seed: model.settings.seed, assessment }), standing)
         }
-        (None, _) => None,
+        (None, _) => (None, None),
     };
     let subject = Subject { name: boulder.id.clone(), rock: table.rock.name.clone(), exposure };
     if let Some(folder) = &args.csv {
@@ -127,14 +153,42 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
         }
     }
     let text = if args.json {
-        probe_table::json(&subject, &result, ensemble.as_ref())
+        probe_table::json(&subject, &result, ensemble.as_ref(), standing.as_ref())
     } else {
-        probe_table::text(&subject, &result, ensemble.as_ref())
+        probe_table::text(&subject, &result, ensemble.as_ref(), standing.as_ref())
     };
     let mut out = std::io::stdout().lock();
     out.write_all(text.as_bytes())?;
     out.flush()?;
     Ok(Exit::Done)
+}
+
+/// What lies around a probed boulder.
+struct Around<'a> {
+    placed: Placed,
+    trails: Option<&'a [Trail]>,
+    terrain: Option<&'a Terrain>,
+}
+
+/// The boulder as a source, its reach and what would change the answer.
+fn standing(
+    model: &Model,
+    boulder: &Boulder,
+    covering: &[&Burn],
+    draws: &[DrawSummary],
+    around: Around<'_>,
+) -> Standing {
+    let Around { placed, trails, terrain } = around;
+    let source = model.source(boulder, &placed, draws);
+    let inputs = StaticsInputs::of(boulder, placed.raster_slope_deg);
+    let statics = statics(&inputs, model.mean_base_retreat_m(draws), &model.settings.rockfall);
+    let judged = Judged { boulder, placed: &placed, source: Some(&source), not_assessed: None };
+    let ground = covering.iter().filter_map(|burn| burn.ground_after).max();
+    let stretches = trails.map(|trails| {
+        model.stretches(boulder, &placed, judged.width_m(), Surroundings { trails, terrain, ground })
+    });
+    let sensitivity = model.sensitivity(boulder, &placed, covering);
+    Standing { placed, source, statics, stretches, with_terrain: terrain.is_some(), sensitivity }
 }
 
 /// The boulder to probe and the burns to place it in.

@@ -137,6 +137,13 @@ impl PointSet {
         &self.coordinates[dimension as usize]
     }
 
+    /// The same points with one coordinate held at the share `u` in (0, 1) in every draw.
+    pub fn pinned(&self, dimension: Dimension, u: f64) -> PointSet {
+        let mut points = self.clone();
+        points.coordinates[dimension as usize].fill(u);
+        points
+    }
+
     /// Means of a quantity over each replicate; `values` is `[draws]`.
     pub fn replicate_means(&self, values: &[f64]) -> Vec<f64> {
         let each = self.draws / Settings::REPLICATES;

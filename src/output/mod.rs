@@ -21,6 +21,7 @@ pub mod fields;
 pub mod geojson;
 pub mod inspection;
 pub mod message;
+pub mod probe_source;
 pub mod probe_table;
 pub mod rock_table;
 pub mod run_record;

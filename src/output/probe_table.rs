@@ -2,6 +2,7 @@
 
 use serde::Serialize;
 
+use super::probe_source::{self, Standing, StandingDoc};
 use crate::assess::probe::{BRANCHES, Probe};
 use crate::assess::{Assessment, Quantiles};
 use crate::units::{J_PER_MJ, M2_S_PER_MM2_S, MM_PER_M, PA_PER_MPA, W_PER_KW, celsius};
@@ -96,6 +97,8 @@ struct Document<'a> {
     steps: usize,
     properties: Properties,
     ensemble: Option<Ensemble>,
+    #[serde(flatten)]
+    standing: StandingDoc,
 }
 
 /// What a probe is about, for its head.
@@ -200,7 +203,12 @@ fn events(probe: &Probe) -> Vec<EventRow> {
 }
 
 /// The probe as JSON.
-pub fn json(subject: &Subject, probe: &Probe, ensemble_run: Option<&EnsembleRun>) -> String {
+pub fn json(
+    subject: &Subject,
+    probe: &Probe,
+    ensemble_run: Option<&EnsembleRun>,
+    standing: Option<&Standing>,
+) -> String {
     let pulse = subject.exposure.is_some();
     let document = Document {
         program: "spallcast",
@@ -226,6 +234,7 @@ pub fn json(subject: &Subject, probe: &Probe, ensemble_run: Option<&EnsembleRun>
         steps: probe.steps,
         properties: properties(probe, pulse),
         ensemble: ensemble_run.map(ensemble),
+        standing: probe_source::document(standing),
     };
     let mut text = serde_json::to_string_pretty(&document).expect("numbers and strings are always JSON");
     text.push('\n');
@@ -301,7 +310,12 @@ fn finish(writer: csv::Writer<Vec<u8>>) -> Result<String, csv::Error> {
 }
 
 /// The probe as text: head, temperature table, events.
-pub fn text(subject: &Subject, probe: &Probe, ensemble_run: Option<&EnsembleRun>) -> String {
+pub fn text(
+    subject: &Subject,
+    probe: &Probe,
+    ensemble_run: Option<&EnsembleRun>,
+    standing: Option<&Standing>,
+) -> String {
     let p = properties(probe, subject.exposure.is_some());
     let mut out = format!(
         "{}\n  rock {}, exposure {}, conduction in a {}\n  {BRANCHES}\n  diffusivity {:.3} mm2/s, conductivity {:.2} W/mK, \
@@ -359,6 +373,10 @@ pub fn text(subject: &Subject, probe: &Probe, ensemble_run: Option<&EnsembleRun>
             share(e.p_split),
             share(e.p_rind)
         ));
+    }
+    if let Some(standing) = standing {
+        out.push_str(&probe_source::text(standing));
+        out.push('\n');
     }
     out.push_str(&format!(
         "energy balance {:.1e} of the heat exchanged, {} steps\n",

@@ -180,7 +180,7 @@ fn flags_of(inputs: &StaticsInputs<'_>, settings: &RockfallSettings) -> BTreeSet
 }
 
 /// Half the shortest axis and half the mean of the other two, m: what an unrecorded centroid is guessed from.
-fn half_sizes(inputs: &StaticsInputs<'_>, radius_m: f64) -> (f64, f64) {
+pub(crate) fn half_sizes(inputs: &StaticsInputs<'_>, radius_m: f64) -> (f64, f64) {
     match inputs.axes_m {
         Some([a, b, c]) => {
             let shortest = a.min(b).min(c);
