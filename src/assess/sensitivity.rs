@@ -17,8 +17,8 @@ use crate::ensemble::points::Dimension;
 use crate::rockfall::friction::contact_index;
 use crate::rockfall::place::Placed;
 use crate::rockfall::points::StaticDim;
-use crate::rockfall::source::SourceBasis;
 use crate::rockfall::release::StaticsInputs;
+use crate::rockfall::source::SourceBasis;
 use crate::site::{Boulder, Burn, Contact, Kind, RockChoice, Support};
 
 /// The percentiles at which inputs are held, as shares.

@@ -16,9 +16,7 @@ use crate::rockfall::friction::{UNKNOWN_CONTACT, contact_index};
 use crate::rockfall::place::Placed;
 use crate::rockfall::reach::{EnergyLine, ReachAngle, SHADOW_ANGLE_DEG, energy_line};
 use crate::rockfall::release::{StaticsInputs, half_sizes};
-use crate::rockfall::statics::{
-    SEAT_MIN_M, ellipsoid_m3, overturn_fs, roll_fs, slide_fs, undercut_to_overturn_m,
-};
+use crate::rockfall::statics::{SEAT_MIN_M, ellipsoid_m3, overturn_fs, roll_fs, slide_fs, undercut_to_overturn_m};
 use crate::rockfall::terrain::Terrain;
 use crate::settings::RockfallSettings;
 use crate::site::{Boulder, Contact, GroundAfter, Kind, Trail};
@@ -157,13 +155,20 @@ impl Model {
     pub fn mass_kg(&self, boulder: &Boulder) -> Option<f64> {
         let (rock, _) = *self.rocks_of(&boulder.rock).first()?;
         let own = boulder.heating.properties.iter().rev().find(|(p, _)| *p == Property::Density).map(|(_, v)| *v);
-        let density = own.unwrap_or_else(|| self.tables.rocks[rock].rock.figure(Property::Density).distribution.median());
+        let density =
+            own.unwrap_or_else(|| self.tables.rocks[rock].rock.figure(Property::Density).distribution.median());
         let axes_m = boulder.axes_m.or(boulder.radius_m.map(|r| [2.0 * r; 3]))?;
         Some(density * ellipsoid_m3(axes_m))
     }
 
     /// Every stretch within reach of a boulder, trail by trail. `width_m` is the block's width.
-    pub fn stretches(&self, boulder: &Boulder, placed: &Placed, width_m: f64, around: Surroundings<'_>) -> Vec<Stretch> {
+    pub fn stretches(
+        &self,
+        boulder: &Boulder,
+        placed: &Placed,
+        width_m: f64,
+        around: Surroundings<'_>,
+    ) -> Vec<Stretch> {
         let settings = &self.settings;
         let mut segments: Vec<Segment> =
             around.trails.iter().enumerate().flat_map(|(i, t)| cut(t, i, settings.trail.segment_m)).collect();

@@ -184,9 +184,8 @@ fn standing(
     let statics = statics(&inputs, model.mean_base_retreat_m(draws), &model.settings.rockfall);
     let judged = Judged { boulder, placed: &placed, source: Some(&source), not_assessed: None };
     let ground = covering.iter().filter_map(|burn| burn.ground_after).max();
-    let stretches = trails.map(|trails| {
-        model.stretches(boulder, &placed, judged.width_m(), Surroundings { trails, terrain, ground })
-    });
+    let stretches = trails
+        .map(|trails| model.stretches(boulder, &placed, judged.width_m(), Surroundings { trails, terrain, ground }));
     let sensitivity = model.sensitivity(boulder, &placed, covering);
     Standing { placed, source, statics, stretches, with_terrain: terrain.is_some(), sensitivity }
 }

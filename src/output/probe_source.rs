@@ -307,6 +307,13 @@ pub(super) fn text(standing: &Standing) -> String {
         out.push_str(&format!("  factors of safety at the middle of the inputs, slope {:.0} deg\n", statics.slope_deg));
         out.push_str(&row("today", &statics.today));
         out.push_str(&row("after changes", &statics.after));
+        let today = &statics.today;
+        if [today.slide, today.overturn, today.roll].into_iter().flatten().any(|f| f < 1.0) {
+            out.push_str(
+                "  below 1 today although it stands: a support is not counted here, and without one the draws that would \
+                 not stand were rejected\n",
+            );
+        }
     }
     if let Some(stretches) = &standing.stretches {
         out.push_str(&reach_text(stretches, standing.with_terrain));
