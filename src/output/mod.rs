@@ -12,6 +12,8 @@
 //! probe_table one boulder through time and depth, as text, JSON and CSV
 //! rock_table  the catalogue as text and JSON
 //! trails      the columns of the trail layer
+//! schema      inputs, settings and output fields for machines
+//! template    an empty inventory and a settings file to fill in
 //! ```
 
 pub mod burns;
@@ -25,6 +27,8 @@ pub mod probe_source;
 pub mod probe_table;
 pub mod rock_table;
 pub mod run_record;
+pub mod schema;
+pub mod template;
 pub mod trails;
 
 pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, burn_results, summarise_burns};
