@@ -14,6 +14,7 @@
 //! trails      the columns of the trail layer
 //! schema      inputs, settings and output fields for machines
 //! template    an empty inventory and a settings file to fill in
+//! trails      the columns of the trail layer
 //! ```
 
 pub mod burns;
