@@ -229,7 +229,7 @@ impl Model {
         let main = &fires[0];
         let heat = summary::heat(&summaries);
         let spall = summary::spall(&summaries, &self.points, body.rind_m.is_some());
-        let reason = reason(boulder, main, &heat, &spall);
+        let reason = reason(boulder, &fires, &heat, &spall);
         let assessment = Assessment {
             status: Status::Assessed,
             reason,
@@ -325,13 +325,18 @@ const SMALL: f64 = 0.1;
 const LARGE: f64 = 0.6;
 
 /// The main reason for the numbers, in one or two sentences.
-fn reason(boulder: &Boulder, fire: &Fire, heat: &HeatSummary, spall: &SpallSummary) -> String {
+fn reason(boulder: &Boulder, fires: &[Fire], heat: &HeatSummary, spall: &SpallSummary) -> String {
     let rock = match &boulder.rock {
         RockChoice::Named(name) => name.as_str(),
         RockChoice::Mixture => "unrecorded rock",
     };
-    let exposure = fire.exposure_word().replace('_', " ").replace('+', " or ");
-    let minutes = fire.median_residence_s() / crate::units::SECONDS_PER_MINUTE;
+    let told = |fire: &Fire| {
+        let exposure = fire.exposure_word().replace('_', " ").replace('+', " or ");
+        let minutes = fire.median_residence_s() / crate::units::SECONDS_PER_MINUTE;
+        let fire_word = if fire.classes[0].is_contact() { "" } else { " fire" };
+        format!("{exposure}{fire_word} of {minutes:.1} min")
+    };
+    let history = fires.iter().map(told).collect::<Vec<_>>().join(", then ");
     let peak = crate::units::celsius(heat.peak_surface_k.p50);
     let dose = heat.absorbed_j_m2_p50 / crate::units::J_PER_MJ;
     let spalled = if spall.p_spall < SMALL {
@@ -344,7 +349,5 @@ fn reason(boulder: &Boulder, fire: &Fire, heat: &HeatSummary, spall: &SpallSumma
         let thickness = spall.thickness_m.unwrap_or(0.0) * crate::units::MM_PER_M;
         format!("{weight} spall, led by {}, about {thickness:.1} mm where they do", led[0].0)
     };
-    format!(
-        "{rock} in {exposure} fire, {minutes:.1} min: face to about {peak:.0} C, {dose:.1} MJ/m2 absorbed, {spalled}"
-    )
+    format!("{rock} in {history}: face to about {peak:.0} C, {dose:.1} MJ/m2 absorbed, {spalled}")
 }

@@ -37,6 +37,7 @@ fn unit_draws(m: f64) -> FlakeDraws {
         grain_m: 0.0,
         energy_floor_pa2_m: Lanes::ZERO,
         counted_risk: Lanes::ZERO,
+        deepest_m: Lanes::splat(f64::INFINITY),
     }
 }
 

@@ -184,23 +184,24 @@ fn every_law_passes_through_the_sampled_value() {
     assert_eq!(cases, 40);
 }
 
-/// k0 = .53 x 2.5 + .5 sqrt(1.13 x 6.25 - .42 x 2.5) (crystalline); slope .003 - .0042/k0;
-/// k(500)/k(20) = (.99 + 20 slope)/(.99 + 500 slope).
+/// A rock whose 20 C value lies on the published law of k25 = 2.5 follows that law: k0 = .53 x 2.5 + .5 sqrt(1.13 x 6.25 -
+/// .42 x 2.5) (crystalline), k(T) = k0/(.99 + T(.003 - .0042/k0)), by hand.
 #[test]
-fn scaled_vosteen_keeps_the_published_shape() {
-    // The published form misses k25 by up to 1 %, and 20 C is not 25 C: another 1 %.
-    const ANCHORING: f64 = 0.02;
-    let k0: f64 = 0.53 * 2.5 + 0.5 * (1.13 * 6.25_f64 - 0.42 * 2.5).sqrt();
-    let slope = 0.003 - 0.0042 / k0;
-    let expected = 2.5 * (0.99 + 20.0 * slope) / (0.99 + 500.0 * slope);
-    let w = laws::resistivity(ConductivityLaw::Crystalline, 2.5);
-    close(laws::conductivity(&w, kelvin(500.0)), expected, ALGEBRA);
-    close(laws::conductivity(&w, kelvin(500.0)), laws::vosteen(2.5, 500.0, VosteenForm::Crystalline), ANCHORING);
-    let k0: f64 = 0.54 * 2.5 + 0.5 * (1.16 * 6.25_f64 - 0.39 * 2.5).sqrt();
-    let slope = 0.0034 - 0.0039 / k0;
-    let expected = 2.5 * (0.99 + 20.0 * slope) / (0.99 + 500.0 * slope);
-    let w = laws::resistivity(ConductivityLaw::Sedimentary, 2.5);
-    close(laws::conductivity(&w, kelvin(500.0)), expected, ALGEBRA);
+fn the_law_through_k20_is_the_published_one() {
+    // Four turns of the anchoring leave two digits each.
+    const ANCHORING: f64 = 1e-7;
+    let by_hand = |linear: f64, square: f64, first: f64, a: f64, b: f64, t_c: f64| {
+        let k0 = linear * 2.5 + 0.5 * (square * 6.25 - first * 2.5).sqrt();
+        k0 / (0.99 + t_c * (a - b / k0))
+    };
+    for t_c in [20.0, 100.0, 300.0, 500.0, 700.0] {
+        let crystalline = |t: f64| by_hand(0.53, 1.13, 0.42, 0.003, 0.0042, t);
+        let w = laws::resistivity(ConductivityLaw::Crystalline, crystalline(20.0));
+        close(laws::conductivity(&w, kelvin(t_c)), crystalline(t_c), ANCHORING);
+        let sedimentary = |t: f64| by_hand(0.54, 1.16, 0.39, 0.0034, 0.0039, t);
+        let w = laws::resistivity(ConductivityLaw::Sedimentary, sedimentary(20.0));
+        close(laws::conductivity(&w, kelvin(t_c)), sedimentary(t_c), ANCHORING);
+    }
 }
 
 #[test]

@@ -194,6 +194,7 @@ impl<'a> WatchInputs<'a> {
                     energy_floor_pa2_m: lanes(draws, |d| {
                         d.fracture_toughness * d.fracture_toughness * (1.0 + d.poissons_ratio)
                     }),
+                    deepest_m: lanes(draws, |d| d.patch_m / d.flaw_coefficient),
                     counted_risk: lanes(draws, |d| {
                         let share = settings.flake_share_counted / d.flakable_share;
                         if share < 1.0 { -libm::log1p(-share) } else { f64::INFINITY }

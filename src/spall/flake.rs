@@ -11,6 +11,9 @@
 //! h >= Gc E / ((1 - nu) s^2) with Gc = K^2 (1 - nu^2) / E). The grain counts up to half a millimetre: coarse granite
 //! does shed flakes thinner than its grains, which cleave.
 //!
+//! Discs that would not fit into the heated patch are left out: C x up to the patch radius. Only hours of contact bring the
+//! stress so deep, where the hot rock has lost its stiffness at the face.
+//!
 //! Quadrature: three Gauss points per cell on the linear interpolant of s; stops where s has fallen to .35 of its
 //! largest value; of an exponential profile that drops 1 % of B at m = 8, .2 % at m = 10 and nothing to speak of from 12 on.
 
@@ -52,6 +55,8 @@ pub struct FlakeDraws {
     pub energy_floor_pa2_m: Lanes,
     /// Risk from which the flaked share of the face counts.
     pub counted_risk: Lanes,
+    /// Depth of the largest disc that fits into the heated patch, patch radius over C, m.
+    pub deepest_m: Lanes,
 }
 
 /// Risk of a site and mean depth of its disc, m, for a profile. `depth_m` and `stress_pa` are `[n]`, face first.
@@ -76,6 +81,7 @@ pub fn risk(draws: &FlakeDraws, depth_m: &[Lanes], stress_pa: &[Lanes], largest_
         for (place, weight) in GAUSS {
             let x = z + h * place;
             let density = x * x * power((y + dy * place).max(Lanes::ZERO), draws.modulus) * h * weight;
+            let density = Lanes::where_greater(x, draws.deepest_m, Lanes::ZERO, density);
             second += density;
             third += density * x;
         }
