@@ -57,6 +57,8 @@ const CLEAR: &[&str] = &[
     "latin_1.geojson",
     "number_as_text.geojson",
     "position_four_numbers.geojson",
+    // What follows the open quote is the text of a note; a warning says so.
+    "quote_open.csv",
     "semicolons.csv",
     "single_feature.geojson",
     "sizes_disagree.geojson",
@@ -183,7 +185,8 @@ fn every_hostile_inventory_survives_as_a_stream() {
         codes.insert(code);
         let lines = String::from_utf8(output.stdout).expect("UTF-8");
         for line in lines.lines() {
-            let _: serde_json::Value = serde_json::from_str(line).unwrap_or_else(|e| panic!("{name}: {e}: {line}"));
+            // Values pass through as they were written, numbers beyond the range of a double too: JSON allows them.
+            let _: serde::de::IgnoredAny = serde_json::from_str(line).unwrap_or_else(|e| panic!("{name}: {e}: {line}"));
         }
     }
     assert_eq!(codes, BTreeSet::from([0, 1, 3]), "all three ends occur");
@@ -194,15 +197,18 @@ fn a_line_of_many_megabytes_costs_a_message() {
     const BYTES: usize = 30_000_000;
     let folder = TempDir::new().expect("a folder");
     let burn = burn(folder.path());
-    for start in ["{\"type\":\"FeatureCollection\",\"features\":[\"", "[", "boulder_id,", "\u{1e}"] {
+    // A record that cannot be read costs only itself where records are told apart by their separator.
+    let starts = [("{\"type\":\"FeatureCollection\",\"features\":[\"", 1), ("[", 1), ("boulder_id,", 1), ("\u{1e}", 3)];
+    for (start, code) in starts {
         let mut bytes = start.as_bytes().to_vec();
         bytes.resize(BYTES, b'a');
         let path = folder.path().join("long.geojson");
         std::fs::write(&path, &bytes).expect("written");
-        let out = folder.path().join("o");
-        let output = run(&["assess", "--burn", text(&burn), "--boulders", text(&path), "--out", text(&out)]);
+        let out = folder.path().join(format!("o{code}"));
+        let output =
+            run(&["assess", "--burn", text(&burn), "--boulders", text(&path), "--out", text(&out), "--draws", FEW]);
         sound("a long line", &output, &out);
-        ends_with(&output, 1);
+        ends_with(&output, code);
         assert!(said(&output).len() < 4000, "the message does not repeat the line");
     }
 }
