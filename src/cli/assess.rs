@@ -26,6 +26,7 @@ use spallcast::output::{
     BoulderResult, LayerHead, OptionsRecord, OutputDirectory, RunCounts, RunRecord, SegmentRow, SourceColumns,
     write_boulder_line, write_boulders, write_burns, write_inspection, write_trails,
 };
+use spallcast::report::{PageInputs, ProfileOfBoulder, profiles::profile};
 use spallcast::rock::catalogue::Catalogue;
 use spallcast::rockfall::place::{Placed, doubtful_heights, place};
 use spallcast::rockfall::source::SourceSummary;
@@ -134,6 +135,7 @@ fn source_columns(worked: &Worked) -> SourceColumns {
 struct Job {
     plan: Plan,
     record: RunRecord,
+    model: Model,
     burns: Burns,
     trails: Vec<Trail>,
     terrain: Option<Terrain>,
@@ -227,12 +229,12 @@ impl Job {
         bar.finish_and_clear();
         drop(shared);
         record.timing("boulders", clock_run.elapsed().as_secs_f64());
-        Ok(Job { plan, record, burns, trails, terrain, worked, as_of, directory, clock })
+        Ok(Job { plan, record, model, burns, trails, terrain, worked, as_of, directory, clock })
     }
 
     /// Surveys the trails, ranks, writes and sums up.
     fn finish(self, folder: &std::path::Path, messages: &Messages) -> Result<Exit, Stop> {
-        let Job { plan, mut record, burns, trails, terrain, worked, as_of, mut directory, clock } = self;
+        let Job { plan, mut record, model, burns, trails, terrain, worked, as_of, mut directory, clock } = self;
         let settings = &plan.settings;
         let clock_trails = Instant::now();
         let known: Vec<usize> = (0..worked.len()).filter(|i| worked[*i].feature.boulder.is_ok()).collect();
@@ -274,6 +276,7 @@ impl Job {
             valid_until: Some(valid_until),
         };
         let rows = segment_rows(&survey, &trails);
+        let profiles = first_profiles(&model, &results, &order, &burns);
         let burn_rows = burn_results(&burns, &results);
         let mut write = |name: &str, fill: &mut dyn FnMut(&mut dyn Write) -> std::io::Result<()>| {
             directory.write(name, |out| fill(out)).map_err(|e| Stop::Failed(e.to_string()))
@@ -286,6 +289,16 @@ impl Job {
         }
         record.valid_until = Some(valid_until.to_string());
         record.counts = counts;
+        let page = spallcast::report::page(&PageInputs {
+            results: &results,
+            order: &order,
+            burns: &burn_rows,
+            rows: &rows,
+            record: &record,
+            valid_until,
+            profiles: &profiles,
+        });
+        write("report.html", &mut |out| out.write_all(page.as_bytes()))?;
         record.timing("writing", clock_writing.elapsed().as_secs_f64());
         record.timing("all", clock.elapsed().as_secs_f64());
         record.files = directory.written().to_vec();
@@ -395,6 +408,21 @@ fn surveyed<'a>(worked: &'a Worked, burns: &[Burn]) -> Surveyed<'a> {
         // The barest ground that any covering burn reports.
         ground: worked.within.iter().filter_map(|b| burns[*b].ground_after).max(),
     }
+}
+
+/// Boulders whose heat and stress the page shows through depth.
+const PROFILED: usize = 6;
+
+/// Profiles of the first boulders in the order of inspection that were assessed.
+fn first_profiles(model: &Model, results: &[BoulderResult], order: &[usize], burns: &Burns) -> Vec<ProfileOfBoulder> {
+    let assessed = order.iter().map(|i| &results[*i]).filter(|r| r.assessment.heat.is_some()).take(PROFILED);
+    assessed
+        .filter_map(|result| {
+            let boulder = result.feature.boulder.as_ref().ok()?;
+            let covering: Vec<&Burn> = result.within.iter().map(|b| &burns.burns[*b]).collect();
+            profile(model, boulder, &covering)
+        })
+        .collect()
 }
 
 /// Gives every record its rank: those that could be read by the survey, the others as if anything were possible.

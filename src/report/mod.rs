@@ -7,6 +7,7 @@
 //! frame     longitude and latitude to metres about the middle of the data
 //! classes   classes of source likelihood and of proposals, shared by map, legend and styles
 //! label     a field's name in words
+//! profiles  temperature and stress through depth of the first boulders
 //! ```
 //!
 //! The document loads nothing: styles, script and data stand in it, and its own policy forbids requests. Text of the user
@@ -22,6 +23,7 @@ pub mod data;
 pub mod frame;
 pub mod label;
 pub mod page;
+pub mod profiles;
 pub mod summary;
 
 pub use page::{PageInputs, ProfileEvent, ProfileOfBoulder, page};

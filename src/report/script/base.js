@@ -1,8 +1,4 @@
-<<<<<<< HEAD
 // Data access, formatting, and the making of elements. Text enters the page through text nodes and attributes only.
-=======
-// Data access, formatting and element helpers. Text enters the page through text nodes and attributes only.
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
 const DATA = JSON.parse(document.getElementById("data").textContent);
 const WORDS = DATA.strings;
 const SVG_SPACE = document.querySelector("svg").namespaceURI;
@@ -85,7 +81,6 @@ const heading = (field) => {
   return unit && unit !== "°" ? `${field.label} (${unit})` : field.label;
 };
 const metres = (x) => x.toLocaleString("en-GB", { maximumFractionDigits: 1 });
-<<<<<<< HEAD
 // Colours and fonts of the style sheet, read once until the theme changes.
 const INKS = new Map();
 function ink(name) {
@@ -97,9 +92,6 @@ for (const moment of ["beforeprint", "afterprint"]) addEventListener(moment, () 
   document.documentElement.classList.toggle("printing", moment === "beforeprint");
   INKS.clear();
 });
-=======
-const ink = (name) => getComputedStyle(document.documentElement).getPropertyValue(name).trim();
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
 
 // Classes of the map: the same limits, words and colours as in the legend.
 const CLASSES = DATA.classes;
@@ -114,11 +106,8 @@ function class_of(row) {
 }
 const proposal_at = (word) => PROPOSALS.findIndex((p) => p.word === word);
 
-<<<<<<< HEAD
 // More boulders than this are a crowd on the map.
 const CROWD = 3000;
-=======
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
 // What is shown and selected; every part of the page listens.
 const STATE = { shown: [], filter: {}, selected: null };
 const LISTENERS = [];

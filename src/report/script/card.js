@@ -1,9 +1,5 @@
 // The card of a boulder, a stretch or a burn: every figure with its unit and meaning, the reason, the flags, the sources.
-<<<<<<< HEAD
 const FLAGS = DATA.flags, LEFT_OUT = "In boulders.geojson; this page leaves it out.";
-=======
-const FLAGS = DATA.flags;
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
 
 function figures(set, row, skip) {
   const list = h("dl", { class: "figures" });
@@ -49,24 +45,14 @@ function boulder_card(row) {
     unknown ? h("p", { class: "unknown-note" }, "Not assessed: unknown, never open.") : null,
     unknown ? null : h("div", { class: "headline" }, headline("p_source", typeof low === "number" ? `source likelihood (${percent(low)} to ${percent(high)})` : "source likelihood"),
       headline("p_spall", "likelihood of spalling"), headline("spall_thickness_mm", "mm expected spall thickness")),
-<<<<<<< HEAD
     h("h4", {}, "Reason"), h("p", {}, boulder(row, "reason") ?? LEFT_OUT),
-=======
-    h("h4", {}, "Reason"), h("p", {}, boulder(row, "reason") ?? "In boulders.geojson; this page leaves it out."),
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     h("h4", {}, "Trail stretches that name it"),
     named.length ? h("ul", { class: "sources" }, named.slice(0, 12).map((at) => h("li", {}, stretch_button(at), " ", pill(stretch(at, "proposal")))),
       named.length > 12 ? h("li", {}, `and ${named.length - 12} more`) : null) : h("p", {}, "None."),
     h("h4", {}, "Flags"),
-<<<<<<< HEAD
     flags.length ? h("dl", { class: "figures plain" }, flags.map((f) => h("div", {}, h("dt", {}, f.replaceAll("_", " ")), h("dd", {}, FLAGS[f] || "")))) : h("p", {}, boulder(row, "flags") === undefined ? LEFT_OUT : "None."),
     h("details", { open: true }, h("summary", {}, "All figures"), figures(DATA.boulders, row, ["rank", "boulder_id", "reason", "flags"])),
     h("details", {}, h("summary", {}, "As recorded"), recorded(DATA.boulders.input[row]) ?? h("p", {}, LEFT_OUT)),
-=======
-    flags.length ? h("dl", { class: "figures plain" }, flags.map((f) => h("div", {}, h("dt", {}, f.replaceAll("_", " ")), h("dd", {}, FLAGS[f] || "")))) : h("p", {}, "None."),
-    h("details", { open: true }, h("summary", {}, "All figures"), figures(DATA.boulders, row, ["rank", "boulder_id", "reason", "flags"])),
-    h("details", {}, h("summary", {}, "As recorded"), recorded(DATA.boulders.input[row]) ?? h("p", {}, "In boulders.geojson; this page leaves it out.")),
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     h("details", {}, h("summary", {}, "Sources"), sources(row)),
   ];
 }

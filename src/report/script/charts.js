@@ -1,12 +1,7 @@
 // Charts in SVG, from the same figures as the layers.
 const CHARTS = (() => {
-<<<<<<< HEAD
   const W = 440;
   const frame = (height, label, wide) => s("svg", { viewBox: `0 0 ${wide || W} ${height}`, role: "img", "aria-label": label });
-=======
-  const W = 560;
-  const frame = (height, label) => s("svg", { viewBox: `0 0 ${W} ${height}`, role: "img", "aria-label": label });
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
   const text = (x, y, words, kind, anchor) => s("text", { x, y, class: kind || "axis", "text-anchor": anchor || "middle" }, words);
   const line = (x1, y1, x2, y2, kind) => s("line", { x1, y1, x2, y2, class: kind });
   const numbers = (name) => DATA.boulders.rows.map((_, row) => boulder(row, name)).filter((v) => typeof v === "number" && isFinite(v));
@@ -16,11 +11,7 @@ const CHARTS = (() => {
     for (let e = Math.floor(Math.log10(low)); e <= Math.ceil(Math.log10(high)); e++) for (const k of [1, 2, 5]) {
       const v = k * 10 ** e; if (v < low || v > high) continue;
       svg.append(line(x(v), y, x(v), foot, "grid"));
-<<<<<<< HEAD
       if (k === 1 || high / low < 100) svg.append(text(x(v), foot + 16, significant(v, 2)));
-=======
-      if (k === 1 || high / low < 200) svg.append(text(x(v), foot + 16, significant(v, 2)));
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     }
   }
 
@@ -52,12 +43,7 @@ const CHARTS = (() => {
     if (!rows.length) return nothing("chart-residence", "No boulder has both a fire and a likelihood.");
     const choice = h("select", { id: "residence-figure" }, [["p_spall", "likelihood of spalling"], ["p_source", "source likelihood"]].map(([v, t]) => h("option", { value: v }, t)));
     const place = h("div");
-<<<<<<< HEAD
     add(home, [h("label", { for: "residence-figure" }, "Figure "), choice, place, h("p", { class: "note" }, "Filled disc: residence recorded for the boulder or its burn. Hollow square: median of the exposure class, nothing recorded. Beyond 2,000 boulders every n-th is drawn.")]);
-=======
-    add(home, [h("label", { for: "residence-figure" }, "Figure "), choice, place, h("p", { class: "note" }, "Filled: residence recorded for the boulder or its burn. Hollow: median of the exposure class, nothing recorded. Cross: choosing a mark shows the boulder.")]);
-    home.querySelector(".note").textContent = "Filled disc: residence recorded for the boulder or its burn. Hollow square: median of the exposure class, nothing recorded. Beyond 2,000 boulders every n-th is drawn.";
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     function show() {
       const name = choice.value, all = rows.filter((row) => typeof boulder(row, name) === "number"), skip = Math.ceil(all.length / 2000);
       const svg = frame(330, choice.selectedOptions[0].textContent + " against fire residence time"), t = (row) => Math.max(0.02, DATA.boulders.residence[row][0]);
@@ -82,11 +68,7 @@ const CHARTS = (() => {
   function drivers() {
     const top = DATA.boulders.rows.map((_, row) => row).filter((row) => boulder(row, "status") === "assessed").slice(0, 10);
     if (!top.length) return nothing("chart-drivers", "No boulder was assessed.");
-<<<<<<< HEAD
     const tall = 40, foot = 14 + top.length * tall, left = 92, svg = frame(foot + 44, "What drives the ten assessed boulders that come first in the order of inspection"), x = (p) => left + p * (W - left - 20);
-=======
-    const tall = 40, foot = 14 + top.length * tall, left = 104, svg = frame(foot + 44, "What drives the ten assessed boulders that come first in the order of inspection"), x = (p) => left + p * (W - left - 20);
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     for (const p of [0, 0.25, 0.5, 0.75, 1]) svg.append(line(x(p), 6, x(p), foot, "grid"), text(x(p), foot + 16, p * 100 + " %"));
     top.forEach((row, i) => {
       const y = 20 + i * tall, value = (name) => boulder(row, name), name = boulder_name(row), heavy = heaviest(row);
@@ -95,7 +77,6 @@ const CHARTS = (() => {
       if (typeof value("p_spall") === "number") svg.append(s("circle", { cx: x(value("p_spall")), cy: y, r: 4.5, class: "drive-0" }));
       if (typeof value("p_release") === "number") svg.append(s("path", { d: `M${x(value("p_release"))} ${y - 6}l6 10h-12z`, class: "drive-1" }));
       if (typeof value("p_fragment") === "number") svg.append(s("rect", { x: x(value("p_fragment")) - 4, y: y - 4, width: 8, height: 8, class: "drive-2" }));
-<<<<<<< HEAD
       const mode = value("source_mode"), how = mode ? (mode === "fragment" ? "may shed a piece" : "may " + mode) : "no source likelihood";
       svg.append(text(left, y + 20, how + (heavy === null ? "; no stretch names it" : `; ${NAMED_BY[row].length} stretches, at worst ${PROPOSALS[heavy].word}`), "axis halo", "start"));
     });
@@ -108,30 +89,12 @@ const CHARTS = (() => {
     if (!list.length) return nothing("chart-depth", "No depth profiles were stored with this run. “spallcast probe --id NAME” computes one boulder through time and depth.");
     const choice = h("select", { id: "depth-boulder" }, list.map((p, i) => h("option", { value: i }, p.id))), place = h("div", { class: "pair" });
     add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
-=======
-      const mode = value("source_mode"), how = mode ? "would most likely " + (mode === "fragment" ? "shed a loose piece" : mode) : "no source likelihood";
-      svg.append(text(left, y + 20, how + (heavy === null ? "; no trail stretch names it" : `; stretches: ${NAMED_BY[row].length}, heaviest “${PROPOSALS[heavy].word}”`), "axis", "start"));
-    });
-    svg.append(text((left + W) / 2, foot + 36, "likelihood within the horizon", "axis strong"));
-    add(by_id("chart-drivers"), [svg, h("p", { class: "note" }, "Bar with tick: source likelihood with its 95 % interval. Disc: spalling. Triangle: the boulder itself moves. Square: a loose piece moves. Exposure of people on the trails sets the order of inspection.")]);
-  }
-
-  function depths() {
-    const list = DATA.profiles, home = by_id("chart-depth");
-    if (!list.length) return nothing("chart-depth", "No depth profiles were stored with this run. “spallcast probe --id NAME” computes one boulder through time and depth.");
-    const choice = h("select", { id: "depth-boulder" }, list.map((p, i) => h("option", { value: i }, p.id))), place = h("div", { class: "pair" });
-    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Marks on the depth axis: events with their time.")]);
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     const DASH = ["", "8 3", "2 3", "10 3 2 3", "5 5", "1 4"];
     function show() {
       const p = list[choice.value]; place.replaceChildren();
       for (const [key, words, unit] of [["temperature_c", "temperature", "°C"], ["skin_stress_mpa", "compression along the face", "MPa"]]) {
         const grid = p[key]; if (!grid.length) continue;
-<<<<<<< HEAD
         const svg = frame(380, `${words} through depth of boulder ${p.id}`, W);
-=======
-        const svg = frame(380, `${words} through depth of boulder ${p.id}`);
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
         const all = grid.flat().filter((v) => v !== null && isFinite(v)), deep = Math.max(...p.depth_mm), low = Math.min(0, ...all), high = Math.max(1, ...all);
         const x = (v) => 52 + ((v - low) / (high - low)) * (W - 84), y = (d) => 40 + Math.sqrt(d / deep) * 318;
         const step = [0.5, 1, 2, 5, 10, 20, 50, 100, 200, 500, 1000].find((k) => (high - low) / k <= 7) || 2000;
@@ -145,16 +108,12 @@ const CHARTS = (() => {
           const at = Math.min(p.depth_mm.length - 1, Math.round(((i + 1) / (picks.length + 1)) * p.depth_mm.length * 0.5));
           if (grid[k][at] !== null) svg.append(text(x(grid[k][at]) + 6, y(p.depth_mm[at]), clock(p.times_s[k]), "axis halo", "start"));
         });
-<<<<<<< HEAD
         (p.events || []).forEach((e) => {
           if (typeof e.depth_mm !== "number" || e.depth_mm > deep) return;
           const at = y(e.depth_mm);
           svg.append(line(52, at, W - 32, at, "event-line"), s("path", { d: `M${W - 32} ${at}l9 -5v10z`, class: "event" }),
             text(W - 36, at - 4, `${e.family}, ${significant(e.depth_mm, 2)} mm at ${clock(e.time_s)}`, "axis halo strong", "end"));
         });
-=======
-        (p.events || []).forEach((e) => { if (typeof e.depth_mm === "number" && e.depth_mm <= deep) svg.append(s("path", { d: `M52 ${y(e.depth_mm)}l-9 -5v10z`, class: "event" }, s("title", {}, `${e.family} at ${clock(e.time_s)}, ${significant(e.depth_mm, 3)} mm`)), text(56, y(e.depth_mm) - 4, `${e.family}, ${clock(e.time_s)}`, "axis halo strong", "start")); });
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
         place.append(svg);
       }
     }

@@ -1,6 +1,5 @@
 // Puts the parts to work. The first screen stands without any of this.
 document.querySelectorAll("canvas.key").forEach((c) => {
-<<<<<<< HEAD
   const trail = c.dataset.trail, [w, t] = trail === undefined ? [26, 26] : [44, 14];
   const draw = () => {
     const r = Math.max(1, devicePixelRatio || 1), p = c.getContext("2d");
@@ -8,9 +7,6 @@ document.querySelectorAll("canvas.key").forEach((c) => {
     if (trail !== undefined) return MAP.trail_on(p, Number(trail));
     p.translate(13, 13); MAP.sprite_on(p, c.dataset.key);
   };
-=======
-  const draw = () => { const r = Math.max(1, devicePixelRatio || 1); c.width = c.height = 26 * r; const p = c.getContext("2d"); p.scale(r, r); p.translate(13, 13); MAP.sprite_on(p, c.dataset.key); };
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
   draw();
   matchMedia("(prefers-color-scheme: dark)").addEventListener("change", draw);
   addEventListener("beforeprint", draw); addEventListener("afterprint", draw);

@@ -88,11 +88,8 @@ const MAP = (() => {
   }
 
   function hatch(i) {
-<<<<<<< HEAD
     const key = "hatch" + (i % 4);
     if (sprites[key]) return sprites[key];
-=======
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     const size = 12, made = document.createElement("canvas");
     made.width = made.height = size * ratio;
     const p = made.getContext("2d"), [dx, dy] = [[1, 1], [1, -1], [1, 0], [0, 1]][i % 4];
@@ -100,21 +97,13 @@ const MAP = (() => {
     p.beginPath();
     for (const k of [-1, 0, 1]) {
       const ox = dx && dy ? k * size : dx ? 0 : size / 2, oy = dx && dy ? 0 : dy ? 0 : size / 2;
-<<<<<<< HEAD
       p.moveTo(ox, dy < 0 ? size - oy : oy);
-=======
-      p.moveTo(ox - (dx && dy ? 0 : 0), dy < 0 ? size - oy : oy);
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
       p.lineTo(ox + dx * size, (dy < 0 ? size : oy) + dy * size);
     }
     p.stroke();
     const pattern = pen.createPattern(made, "repeat");
     pattern.setTransform(new DOMMatrix().scale(1 / ratio));
-<<<<<<< HEAD
     return (sprites[key] = pattern);
-=======
-    return pattern;
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
   }
   function trace(flat, close) {
     for (let i = 0; i < flat.length; i += 2) {
@@ -139,7 +128,6 @@ const MAP = (() => {
       pen.strokeStyle = ink("--burn"); pen.setLineDash([7, 3]);
       pen.lineWidth = chosen && chosen.kind === "burn" && chosen.row === i ? 3.5 : 1.4; pen.stroke(); pen.setLineDash([]); pen.globalAlpha = 1;
     });
-<<<<<<< HEAD
     // Places that names must leave free: scale, north arrow, buttons.
     taken = [[80, height - 20, 90], [width - 24, 32, 20], [30, 27, 24], [30, 65, 24], [30, 103, 24]];
     // In a crowd the trails lie on top, so that their proposals stay readable.
@@ -159,19 +147,12 @@ const MAP = (() => {
   function trail_on(p, at) {
     for (const pass of [0, 1, 2]) if (line_style(p, at, pass)) { p.beginPath(); p.moveTo(1, 7); p.lineTo(43, 7); p.stroke(); }
   }
-=======
-    draw_trails(); draw_boulders(); draw_names(); draw_chosen(); draw_scale();
-  }
-
-  const WIDTHS = [9, 7, 5, 3, 9];
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
   function draw_trails() {
     pen.lineCap = "butt"; pen.lineJoin = "round";
     const wanted = STATE.filter.proposal;
     for (const pass of [0, 1, 2]) DATA.trails.lines.forEach((line, i) => {
       const at = proposal_at(stretch(i, "proposal"));
       pen.globalAlpha = wanted && wanted !== PROPOSALS[at].word ? 0.18 : 1;
-<<<<<<< HEAD
       if (!line_style(pen, at, pass)) return;
       pen.beginPath(); trace(line, false); pen.stroke();
     });
@@ -196,66 +177,30 @@ const MAP = (() => {
     }
   }
   let taken = [];
-=======
-      pen.beginPath(); trace(line, false);
-      if (pass === 0) { pen.strokeStyle = ink("--ink"); pen.lineWidth = WIDTHS[at] + 2.4; pen.setLineDash([]); }
-      if (pass === 1) { pen.strokeStyle = ink("--proposal-" + at); pen.lineWidth = WIDTHS[at]; pen.setLineDash([]); }
-      if (pass === 2) {
-        if (at === 3) return;
-        pen.strokeStyle = at === 4 ? "#000" : ink("--proposal-ink"); pen.lineWidth = [3, 7, 1.5, 0, 9][at];
-        pen.setLineDash([[], [2, 7], [4, 4], [], [2, 3]][at]);
-      }
-      pen.stroke();
-    });
-    pen.setLineDash([]); pen.globalAlpha = 1;
-  }
-  function draw_boulders() {
-    const half = 15;
-    for (const row of STATE.drawn) {
-      const x = to_x(X[row]), y = to_y(Y[row]);
-      if (x < -half || y < -half || x > width + half || y > height + half) continue;
-      pen.drawImage(sprite(STATE.classes[row]), x - half, y - half, 30, 30);
-    }
-  }
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
   function label(text, x, y, bold) {
     if (x < 0 || y < 0 || x > width || y > height) return;
     pen.font = (bold ? "600 " : "") + "12px " + ink("--sans");
     pen.textAlign = "center"; pen.textBaseline = "middle"; pen.lineWidth = 4; pen.lineJoin = "round";
-<<<<<<< HEAD
     const wide = pen.measureText(text).width / 2 + 4;
     x = Math.max(wide, Math.min(width - wide, x));
     // A name that would lie on another is left out until there is room.
     if (taken.some((b) => Math.abs(b[0] - x) < b[2] + wide && Math.abs(b[1] - y) < 15)) return;
     taken.push([x, y, wide]);
-=======
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     pen.strokeStyle = ink("--field"); pen.strokeText(text, x, y); pen.fillStyle = ink("--ink"); pen.fillText(text, x, y);
   }
   const short = (text) => (text.length > 28 ? text.slice(0, 27) + "…" : text);
   function draw_names() {
-<<<<<<< HEAD
-=======
-    DATA.burns.rings.forEach((rings, i) => {
-      const ring = rings[0]; if (!ring || !ring.length) return;
-      let top = 0; for (let k = 0; k < ring.length; k += 2) if (ring[k + 1] > ring[top + 1]) top = k;
-      label("burn " + short(DATA.burns.names[i]), to_x(ring[top]), to_y(ring[top + 1]) - 9, true);
-    });
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     let last = null;
     DATA.trails.lines.forEach((line, i) => {
       const id = stretch(i, "trail_id");
       if (id !== last && line.length) label("trail " + short(id), to_x(line[0]), to_y(line[1]) + 14, true);
       last = id;
     });
-<<<<<<< HEAD
     DATA.burns.rings.forEach((rings, i) => {
       const ring = rings[0]; if (!ring || !ring.length) return;
       let top = 0; for (let k = 0; k < ring.length; k += 2) if (ring[k + 1] > ring[top + 1]) top = k;
       label("burn " + short(DATA.burns.names[i]), to_x(ring[top]), to_y(ring[top + 1]) - 9, true);
     });
-=======
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
   }
   function draw_chosen() {
     const chosen = STATE.selected; if (!chosen) return;
@@ -413,16 +358,8 @@ const MAP = (() => {
     redraw();
   });
   matchMedia("(prefers-color-scheme: dark)").addEventListener("change", () => { sprites = {}; redraw(); });
-<<<<<<< HEAD
   addEventListener("beforeprint", resize);
   addEventListener("afterprint", resize);
   if (typeof ResizeObserver === "function") new ResizeObserver(resize).observe(frame);
   return { resize, sprite_on: mark, trail_on, screen: (row) => [to_x(X[row]), to_y(Y[row])], view: () => view };
-=======
-  matchMedia("print").addEventListener("change", () => { sprites = {}; resize(); });
-  addEventListener("beforeprint", () => { document.documentElement.classList.add("printing"); sprites = {}; resize(); });
-  addEventListener("afterprint", () => { document.documentElement.classList.remove("printing"); sprites = {}; resize(); });
-  if (typeof ResizeObserver === "function") new ResizeObserver(resize).observe(frame);
-  return { resize, sprite_on: (p, key) => mark(p, key), screen: (row) => [to_x(X[row]), to_y(Y[row])], view: () => view };
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
 })();

@@ -36,12 +36,8 @@ const TABLE = (() => {
     STATE.drawn = STATE.shown.filter((row) => DATA.boulders.x[row] !== null).sort((a, b) => weight[STATE.classes[a]] - weight[STATE.classes[b]]);
     const hidden = total - STATE.shown.length, unknown = STATE.shown.filter((row) => STATE.classes[row] === "unknown").length, off = STATE.shown.length - STATE.drawn.length;
     by_id("shown-words").textContent = `${STATE.shown.length.toLocaleString("en-GB")} of ${total.toLocaleString("en-GB")} boulders shown, ${unknown} of them not assessed` +
-<<<<<<< HEAD
       (off ? `; ${off} without a usable place, in the table only` : "") + (hidden ? `; ${hidden.toLocaleString("en-GB")} hidden by the filters.` : ".") +
       (STATE.drawn.length > CROWD ? " Where equal marks lie on one another the map draws one; zoom in to part them." : "");
-=======
-      (off ? `; ${off} without a usable place, in the table only` : "") + (hidden ? `; ${hidden.toLocaleString("en-GB")} hidden by the filters.` : ".");
->>>>>>> 7359d4f (Report page: map, cards, filters, strips, charts and first screen as one self-contained document)
     page = 0; order(); tell("shown");
   }
   function order() {
