@@ -31,6 +31,16 @@ pub enum Command {
     Rocks(RocksArgs),
     /// Write the demo fire's inputs into a folder and assess them.
     Demo(DemoArgs),
+    /// JSON Schema of inputs and settings, and the list of output fields with units.
+    Schema(SchemaArgs),
+    /// An empty boulder table and a settings file with comments.
+    Template(TemplateArgs),
+    /// Completions for a shell.
+    #[command(hide = true)]
+    Completions(CompletionsArgs),
+    /// Manual pages.
+    #[command(hide = true)]
+    Man(ManArgs),
 }
 
 /// Inputs that several commands share.
@@ -175,4 +185,36 @@ pub struct DemoArgs {
     /// Print nothing but errors.
     #[arg(long)]
     pub quiet: bool,
+}
+
+/// `schema`.
+#[derive(Debug, Args)]
+pub struct SchemaArgs {
+    /// One part only: boulders, burns, trails, settings, outputs.
+    #[arg(value_name = "PART")]
+    pub part: Option<String>,
+}
+
+/// `template`.
+#[derive(Debug, Args)]
+pub struct TemplateArgs {
+    /// Folder to write boulders.csv, columns.txt and settings.toml into; without it the template is printed.
+    #[arg(value_name = "DIR")]
+    pub dir: Option<PathBuf>,
+}
+
+/// `completions`.
+#[derive(Debug, Args)]
+pub struct CompletionsArgs {
+    /// The shell.
+    #[arg(value_name = "SHELL")]
+    pub shell: clap_complete::Shell,
+}
+
+/// `man`.
+#[derive(Debug, Args)]
+pub struct ManArgs {
+    /// Folder to write the pages into.
+    #[arg(value_name = "DIR")]
+    pub dir: PathBuf,
 }

@@ -19,7 +19,7 @@ use crate::fire::exposure::ExposureClass;
 use crate::site::{Burn, GroundAfter};
 use crate::units::{SECONDS_PER_MINUTE, W_PER_KW};
 
-const COLUMNS: [&str; 10] = [
+pub(super) const COLUMNS: [&str; 10] = [
     "burn_id",
     "residence_min",
     "residence_gsd",

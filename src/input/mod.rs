@@ -17,6 +17,7 @@
 mod boulder_record;
 pub mod boulders;
 pub mod burns;
+pub mod column_notes;
 mod columns;
 mod csv;
 mod geojson;
@@ -25,6 +26,7 @@ mod geometry;
 mod properties;
 pub mod series;
 mod setting_names;
+pub mod setting_notes;
 mod setting_values;
 pub mod settings;
 pub mod terrain;

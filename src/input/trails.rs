@@ -16,7 +16,7 @@ use crate::diagnostic::{Diagnostic, Severity};
 use crate::site::Trail;
 use crate::units::SECONDS_PER_MINUTE;
 
-const COLUMNS: [&str; 5] = ["trail_id", "name", "passages_per_day", "walking_speed_m_s", "standing_minutes"];
+pub(super) const COLUMNS: [&str; 5] = ["trail_id", "name", "passages_per_day", "walking_speed_m_s", "standing_minutes"];
 const WANTED: &str = "a LineString or MultiLineString";
 const OR_EMPTY: &str = "correct it, or leave it empty when it is not known";
 const LEFT_OUT: &str = "until then this trail is missing from the layer, which does not mean that it is clear";

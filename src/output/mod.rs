@@ -11,6 +11,8 @@
 //! message     findings and errors as lines for people and machines
 //! probe_table one boulder through time and depth, as text and JSON
 //! rock_table  the catalogue as text and JSON
+//! schema      inputs, settings and output fields for machines
+//! template    an empty inventory and a settings file to fill in
 //! ```
 
 pub mod burns;
@@ -23,6 +25,8 @@ pub mod message;
 pub mod probe_table;
 pub mod rock_table;
 pub mod run_record;
+pub mod schema;
+pub mod template;
 pub mod trails;
 
 pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, burn_results, summarise_burns};
