@@ -23,6 +23,7 @@ pub mod heat;
 pub mod input;
 pub mod numerics;
 pub mod output;
+pub mod report;
 pub mod rock;
 pub mod rockfall;
 pub mod settings;

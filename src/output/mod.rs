@@ -5,6 +5,7 @@
 //! burns       what the boulders of a burn come to, and its columns
 //! inspection  the order of inspection and its table
 //! geojson     the layers and the newline-delimited form
+//! geopackage  all layers in one file for maps (feature `gpkg`)
 //! cautions    what goes with every layer, table and page
 //! run_record  what was run on what, and what came of it
 //! directory   files written beside and renamed, so that a failed run leaves the old ones
@@ -20,6 +21,14 @@ pub mod cautions;
 pub mod directory;
 pub mod fields;
 pub mod geojson;
+#[cfg(feature = "gpkg")]
+pub mod geopackage;
+#[cfg(feature = "gpkg")]
+mod geopackage_blob;
+#[cfg(feature = "gpkg")]
+mod geopackage_columns;
+#[cfg(feature = "gpkg")]
+mod geopackage_tables;
 pub mod inspection;
 pub mod message;
 pub mod probe_table;
@@ -33,6 +42,8 @@ pub use burns::{BURN_FIELDS, BurnResult, BurnSummary, burn_results, summarise_bu
 pub use directory::{Committed, OutputDirectory, OutputError, WrittenFile};
 pub use fields::{BOULDER_FIELDS, BoulderResult, SourceColumns};
 pub use geojson::{LayerHead, write_boulder_line, write_boulders, write_burns, write_trails};
+#[cfg(feature = "gpkg")]
+pub use geopackage::{GeoPackageError, PackageHead, write_geopackage};
 pub use inspection::{assign_ranks, inspection_order, write_inspection};
 pub use run_record::{InputRecord, OptionsRecord, RunCounts, RunRecord};
 pub use trails::{SegmentRow, TRAIL_FIELDS};
