@@ -83,7 +83,7 @@ pub struct AssessArgs {
     /// Days that the source likelihood refers to [default: 180].
     #[arg(long, value_name = "N")]
     pub horizon_days: Option<f64>,
-    /// Formats to write, separated by commas [default: geojson].
+    /// Formats to write, separated by commas: geojson, gpkg [default: geojson].
     #[arg(long, value_name = "LIST", value_delimiter = ',')]
     pub format: Option<Vec<String>>,
     /// Fail with exit code 1, writing nothing, when any boulder is not assessed.
@@ -160,6 +160,12 @@ pub struct ProbeArgs {
     /// Write the tables as CSV files into a folder.
     #[arg(long, value_name = "DIR")]
     pub csv: Option<PathBuf>,
+    /// Draw temperature, stress and events through time and depth; the ending says which: .svg or .png.
+    #[arg(long, value_name = "FILE.svg|.png")]
+    pub plot: Option<PathBuf>,
+    /// Width of the .png, pixels [default: 1860].
+    #[arg(long, value_name = "N", requires = "plot", value_parser = clap::value_parser!(u32).range(200..=8000))]
+    pub plot_width_px: Option<u32>,
 }
 
 /// `rocks`.

@@ -26,7 +26,10 @@ use spallcast::output::{
     BoulderResult, LayerHead, OptionsRecord, OutputDirectory, RunCounts, RunRecord, SegmentRow, SourceColumns,
     write_boulder_line, write_boulders, write_burns, write_inspection, write_trails,
 };
-use spallcast::report::{PageInputs, ProfileOfBoulder, profiles::profile};
+#[cfg(feature = "gpkg")]
+use spallcast::output::{PackageHead, write_geopackage};
+use spallcast::report::sld;
+use spallcast::report::{self, PageInputs, ProfileOfBoulder, profiles::profile};
 use spallcast::rock::catalogue::Catalogue;
 use spallcast::rockfall::place::{Placed, doubtful_heights, place};
 use spallcast::rockfall::source::SourceSummary;
@@ -281,15 +284,17 @@ impl Job {
         let mut write = |name: &str, fill: &mut dyn FnMut(&mut dyn Write) -> std::io::Result<()>| {
             directory.write(name, |out| fill(out)).map_err(|e| Stop::Failed(e.to_string()))
         };
+        write("boulders.sld", &mut |out| out.write_all(sld::boulders().as_bytes()))?;
         write("boulders.geojson", &mut |out| write_boulders(out, &head, &results))?;
         write("burns.geojson", &mut |out| write_burns(out, &head, &burn_rows))?;
         write("inspection.csv", &mut |out| write_inspection(out, &results, &order))?;
         if plan.trails.is_some() {
             write("trails.geojson", &mut |out| write_trails(out, &head, &rows))?;
+            write("trails.sld", &mut |out| out.write_all(sld::trails().as_bytes()))?;
         }
         record.valid_until = Some(valid_until.to_string());
         record.counts = counts;
-        let page = spallcast::report::page(&PageInputs {
+        let page = report::page(&PageInputs {
             results: &results,
             order: &order,
             burns: &burn_rows,
@@ -299,6 +304,15 @@ impl Job {
             profiles: &profiles,
         });
         write("report.html", &mut |out| out.write_all(page.as_bytes()))?;
+        #[cfg(feature = "gpkg")]
+        if plan.formats.iter().any(|f| f == "gpkg") {
+            let trails = plan.trails.is_some().then_some(rows.as_slice());
+            let head = PackageHead { layer: &head, as_of };
+            directory
+                .write_at("spallcast.gpkg", |path| write_geopackage(path, &results, &burn_rows, trails, &head))
+                .map_err(|e| Stop::Failed(e.to_string()))?
+                .map_err(|e| Stop::Failed(e.to_string()))?;
+        }
         record.timing("writing", clock_writing.elapsed().as_secs_f64());
         record.timing("all", clock.elapsed().as_secs_f64());
         record.files = directory.written().to_vec();

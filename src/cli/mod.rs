@@ -9,6 +9,7 @@ pub mod manual;
 pub mod messages;
 pub mod plan;
 pub mod probe;
+pub mod probe_picture;
 pub mod rocks;
 pub mod schema;
 pub mod summary;

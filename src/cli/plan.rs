@@ -11,7 +11,7 @@ use super::args::{AssessArgs, InputArgs};
 use super::exit::Stop;
 
 /// The formats that can be written.
-pub const FORMATS: &[&str] = &["geojson"];
+pub const FORMATS: &[&str] = if cfg!(feature = "gpkg") { &["geojson", "gpkg"] } else { &["geojson"] };
 
 /// Where boulders come from.
 #[derive(Debug, Clone, PartialEq, Eq)]

@@ -17,6 +17,7 @@ use spallcast::input::terrain::read_terrain;
 use spallcast::input::{Duplicates, read_boulders, read_burns, read_series, read_settings, read_trails};
 use spallcast::output::probe_source::Standing;
 use spallcast::output::probe_table::{self, EnsembleRun, Subject};
+use spallcast::report::probe_plot::{self, ProbePlot};
 use spallcast::rock::Property;
 use spallcast::rock::catalogue::Catalogue;
 use spallcast::rockfall::place::{Placed, place};
@@ -31,6 +32,7 @@ use spallcast::units::{ICE_POINT_K, MM_PER_M, SECONDS_PER_MINUTE, W_PER_KW};
 use super::args::ProbeArgs;
 use super::exit::{Exit, Stop};
 use super::messages::Messages;
+use super::probe_picture;
 use super::rocks::find;
 
 /// Depths reported when none are asked for, mm.
@@ -38,6 +40,9 @@ const DEPTHS_MM: [f64; 9] = [0.0, 1.0, 2.0, 5.0, 10.0, 20.0, 50.0, 100.0, 200.0]
 
 /// Runs a probe and prints it.
 pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
+    if let Some(path) = &args.plot {
+        probe_picture::check(path)?;
+    }
     let file = args.inputs.settings.as_deref().map(read_settings).transpose()?;
     let (mut settings, catalogue) =
         file.map_or_else(|| (Settings::default(), Catalogue::embedded()), |f| (f.settings, f.catalogue));
@@ -151,6 +156,26 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
         for (name, text) in files {
             std::fs::write(folder.join(name), text).map_err(|e| failed(e.to_string()))?;
         }
+    }
+    if let Some(path) = &args.plot {
+        let deepest_m = probe_picture::deepest_m(&history, &median, body.convex_radius_m());
+        let depths = probe_plot::plot_depths(&depth_m, deepest_m);
+        let fine = probe::run(table, &body, &history, &median, &depths, &[], &spall);
+        let plot = ProbePlot {
+            subject: &subject,
+            probe: &fine,
+            curve_depth_m: &depth_m,
+            curve_time_s: &time_s,
+            compressive: probe_picture::strength(
+                table,
+                Property::CompressiveStrength,
+                median.draw.compressive_strength_pa,
+                &all_fixed,
+            ),
+            slab: probe_picture::strength(table, Property::TensileStrength, fine.outcome.strength_pa, &all_fixed),
+            ensemble: ensemble.as_ref(),
+        };
+        probe_picture::write(path, &plot, args.plot_width_px)?;
     }
     let text = if args.json {
         probe_table::json(&subject, &result, ensemble.as_ref(), standing.as_ref())

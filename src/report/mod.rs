@@ -1,4 +1,4 @@
-//! `report.html`: one self-contained page from the results of a run.
+//! What people look at: `report.html`, one self-contained page from the results of a run; pictures; styles.
 //!
 //! ```text
 //! page      what goes in; the template; the document
@@ -6,6 +6,9 @@
 //! data      rows of the registries, geometry in metres and profiles as one JSON text
 //! frame     longitude and latitude to metres about the middle of the data
 //! classes   classes of source likelihood and of proposals, shared by map, legend and styles
+//! looks     their marks and dashes in a map program
+//! sld       styles of the layers (OGC)
+//! chart, probe_plot, picture   one boulder through time and depth as SVG and PNG
 //! label     a field's name in words
 //! profiles  temperature and stress through depth of the first boulders
 //! ```
@@ -18,12 +21,17 @@
 //! the columns of the inspection table without reason and flags, and those beyond [`data::LISTED_MAX`] are only counted.
 //! The page says so.
 
+pub mod chart;
 pub mod classes;
 pub mod data;
 pub mod frame;
 pub mod label;
+pub mod looks;
 pub mod page;
+pub mod picture;
+pub mod probe_plot;
 pub mod profiles;
+pub mod sld;
 pub mod summary;
 
 pub use page::{PageInputs, ProfileEvent, ProfileOfBoulder, page};
