@@ -225,6 +225,7 @@ await visit("markup", `${pages}/markup.html`, DESK, async (page) => {
   assert.ok((await cells(page, "boulder_id")).some((c) => c.includes("<img")), "names are shown as they are");
 });
 await visit("antimeridian", `${pages}/antimeridian.html`, DESK, async (page) => {
+  await page.locator("#map-canvas").scrollIntoViewIfNeeded();
   const map = await page.locator("#map-canvas").boundingBox();
   const words = [];
   for (const share of [0.35, 0.65]) { await page.mouse.move(map.x + map.width * share, map.y + map.height / 2); words.push(await page.locator("#place").innerText()); }
