@@ -216,7 +216,7 @@ impl Material<'_> {
             let damage =
                 ((hottest_k - Lanes::splat(DAMAGE_FROM_K)) * (1.0 / DAMAGE_SPAN_K)).max(Lanes::ZERO).min(Lanes::ONE);
             let cooled = ((hottest_k - t_k) * (1.0 / DAMAGE_BLEND_K)).max(Lanes::ZERO).min(Lanes::ONE);
-            factor = factor - damage * cooled * DAMAGE_MAX;
+            factor -= damage * cooled * DAMAGE_MAX;
         }
         if let Some(water) = &self.water {
             factor *= Lanes::where_greater(Lanes::splat(DRYING_TO_K), hottest_k, water.conductivity_factor, Lanes::ONE);

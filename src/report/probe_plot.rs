@@ -146,7 +146,7 @@ impl ProbePlot<'_> {
         let mut said = match self.shown_events().as_slice() {
             [] => "No spall on the medians.".to_owned(),
             events => {
-                let each: Vec<String> = events.iter().map(|e| event_text(e)).collect();
+                let each: Vec<String> = events.iter().map(event_text).collect();
                 format!("On the medians: {}.", each.join("; "))
             }
         };
