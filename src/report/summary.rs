@@ -5,7 +5,7 @@ use crate::output::{BoulderResult, RunCounts, SegmentRow};
 use crate::trail::proposal::{Proposal, one_in};
 
 /// How many stretches are named.
-const WORST_NAMED: usize = 7;
+const WORST_NAMED: usize = 5;
 /// How many boulders are named.
 const FIRST_NAMED: usize = 10;
 /// How many boulders of a stretch are named.
@@ -76,7 +76,8 @@ pub fn proposal_metres(rows: &[SegmentRow]) -> Vec<ProposalMetres> {
 
 /// A length in whole metres with thin groups.
 fn whole(metres: f64) -> String {
-    let digits = format!("{metres:.0}");
+    // An empty sum is minus zero.
+    let digits = format!("{:.0}", metres + 0.0);
     let mut grouped = String::new();
     for (i, c) in digits.chars().enumerate() {
         if i > 0 && (digits.len() - i).is_multiple_of(3) {
