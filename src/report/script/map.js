@@ -46,7 +46,9 @@ const MAP = (() => {
     const pairs = (flat) => { for (let i = 0; i < flat.length; i += 2) take(flat[i], flat[i + 1]); };
     DATA.burns.rings.forEach((rings) => rings.forEach(pairs));
     DATA.trails.lines.forEach(pairs);
-    if (box[0] === Infinity) X.forEach((x, i) => x !== null && take(x, Y[i]));
+    // Boulders near the burns and trails belong to the picture; one far off, often a slip of the pen, would shrink it to a dot.
+    const [w, t, e, n] = box, near = Math.max(e - w, n - t);
+    X.forEach((x, i) => { if (x !== null && (w === Infinity || (x > w - near && x < e + near && Y[i] > t - near && Y[i] < n + near))) take(x, Y[i]); });
     if (box[0] === Infinity) return [-500, -500, 500, 500];
     return box;
   }
