@@ -322,29 +322,32 @@ impl ProbePlot<'_> {
         let kept = self.probe.depth_m.iter().filter(|z| **z <= shown).count();
         let curves = rows.iter().flat_map(|r| self.probe.skin_stress_pa[*r][..kept].iter().map(|s| mpa(*s)));
         let strength = self.compressive;
-        let y = Axis::over(curves.chain([0.0, mpa(strength.high_pa)]), false, "compression along the face, MPa");
+        let heights: Vec<f64> = curves.chain([0.0, mpa(strength.high_pa)]).collect();
+        let thickness = self.ensemble.and_then(|r| r.assessment.spall.as_ref()).and_then(|s| s.thickness_quantiles_m);
+        let room = heights.iter().copied().fold(0.0, f64::max);
+        let below = if thickness.is_some() { -0.26 * room } else { -0.14 * room };
+        let y = Axis::over(heights.into_iter().chain([below]), false, "compression along the face, MPa");
         let mut panel = Panel::new(number, place, "Skin stress through depth, by time", x, y);
         panel.band(mpa(strength.low_pa), mpa(strength.middle_pa), mpa(strength.high_pa));
         self.through_depth(&mut panel, |row, j| mpa(self.probe.skin_stress_pa[row][j]));
         let (left, _, _, _) = panel.edges();
         let at = panel.at_y(mpa(strength.low_pa));
         panel.text(left + 120.0, at - 6.0, Anchor::Start, 12.0, "normal", "compressive strength, cold, 5 to 95 %");
-        for event in self.shown_events() {
-            panel.lying_range(0.0, 0.0, event.depth_m * MM_PER_M, event.depth_m * MM_PER_M);
+        // Below the zero line, which compression leaves free.
+        for (i, event) in self.shown_events().iter().enumerate() {
+            let depth = event.depth_m * MM_PER_M;
+            panel.lying_range(0.0, depth, depth, depth);
+            let (x, y) = (panel.at_x(depth), panel.at_y(0.0) + 17.0 + 14.0 * (i % 3) as f64);
+            if x < panel.edges().2 - 110.0 {
+                panel.text(x + 8.0, y, Anchor::Start, 12.0, "normal", &event_short(event));
+            }
         }
-        if let Some(first) = self.shown_events().first() {
-            let x = panel.at_x(first.depth_m * MM_PER_M) + 9.0;
-            panel.text(x, panel.at_y(0.0) - 8.0, Anchor::Start, 12.0, "normal", &event_short(first));
-        }
-        if let Some(q) = self.ensemble.and_then(|r| r.assessment.spall.as_ref()).and_then(|s| s.thickness_quantiles_m) {
-            let y = above_zero(&panel);
+        if let Some(q) = thickness {
+            let y = -0.22 * room;
             panel.lying_range(y, q.p05 * MM_PER_M, q.p50 * MM_PER_M, q.p95 * MM_PER_M);
-            let text = format!(
-                "spall thickness, draws that spall, 5 to 95 %: {} to {}",
-                millimetres(q.p05),
-                millimetres(q.p95)
-            );
-            panel.text(left + 120.0, panel.at_y(y) + 4.0, Anchor::Start, 12.0, "normal", &text);
+            let text =
+                format!("thickness, draws that spall, 5 to 95 %: {} to {}", millimetres(q.p05), millimetres(q.p95));
+            panel.text(panel.edges().2 - 8.0, panel.at_y(y) - 9.0, Anchor::End, 12.0, "normal", &text);
         }
         panel.finish()
     }
@@ -367,11 +370,6 @@ impl ProbePlot<'_> {
         panel.text(right - 8.0, at - 6.0, Anchor::End, 12.0, "normal", "strength against a slab, cold, 5 to 95 %");
         panel.finish()
     }
-}
-
-/// The value that lies 26 units of the drawing above the zero line.
-fn above_zero(panel: &Panel) -> f64 {
-    26.0 / (panel.at_y(0.0) - panel.at_y(1.0))
 }
 
 fn letter(i: usize) -> &'static str {
