@@ -17,8 +17,7 @@ pub fn schema(args: &SchemaArgs) -> Result<Exit, Stop> {
         })?,
     };
     let mut out = std::io::stdout().lock();
-    serde_json::to_writer_pretty(&mut out, &value).map_err(std::io::Error::from)?;
-    writeln!(out)?;
+    out.write_all(schema::text(&value).as_bytes())?;
     out.flush()?;
     Ok(Exit::Done)
 }

@@ -236,6 +236,11 @@ pub fn document() -> Value {
     })
 }
 
+/// A schema as indented text, ending in a line feed.
+pub fn text(schema: &Value) -> String {
+    format!("{schema:#}\n")
+}
+
 /// One part of [`PARTS`] as a document of its own; `None` for another word.
 pub fn part(name: &str) -> Option<Value> {
     if name == "outputs" {

@@ -154,8 +154,10 @@ mod tests {
 
     #[test]
     fn styles_are_well_formed_with_a_rule_for_every_class() {
-        assert_eq!(rules(&boulders()), [6, 6]);
-        assert_eq!(rules(&trails()), [5, 5]);
+        // A class each, then assessed without a figure, then not assessed.
+        let graduated = |classes: &[Class]| classes.len() + 2;
+        assert_eq!(rules(&boulders()), [graduated(&SOURCE_CLASSES), graduated(&THICKNESS_CLASSES)]);
+        assert_eq!(rules(&trails()), [PROPOSAL_LOOKS.len(), REACH_CLASSES.len() + 1]);
     }
 
     #[test]
