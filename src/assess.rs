@@ -189,12 +189,6 @@ impl Model {
         })
     }
 
-    /// The same model at another resolution, for convergence tables.
-    pub fn at_resolution(mut self, resolution: Resolution) -> Model {
-        self.resolution = resolution;
-        self
-    }
-
     /// Rocks and shares of a record.
     pub fn rocks_of(&self, choice: &RockChoice) -> Vec<(usize, f64)> {
         match choice {

@@ -173,16 +173,6 @@ impl Terrain {
         }
     }
 
-    /// Least and greatest height; `None` when no cell has data.
-    pub fn height_range_m(&self) -> Option<(f64, f64)> {
-        let mut range: Option<(f64, f64)> = None;
-        for h in self.heights_m.iter().filter(|h| !h.is_nan()) {
-            let h = f64::from(*h);
-            range = Some(range.map_or((h, h), |(low, high)| (low.min(h), high.max(h))));
-        }
-        range
-    }
-
     /// Column and row of a point, cell centres at whole numbers; `None` where the projection does not reach.
     pub fn to_cell(&self, lon_deg: f64, lat_deg: f64) -> Option<(f64, f64)> {
         let (x, y) = match &self.projection {

@@ -32,11 +32,6 @@ impl Segment {
     pub fn length_m(&self) -> f64 {
         self.to_m - self.from_m
     }
-
-    /// Whether every point has a height.
-    pub fn has_heights(&self) -> bool {
-        self.points.iter().all(|p| p.height_m.is_some())
-    }
 }
 
 fn point(p: Position) -> Point<f64> {
