@@ -186,7 +186,7 @@ fn run(case: &Value) -> Vec<Seen> {
     let depth = radius.unwrap_or(7.0 * (kappa * end_s).sqrt());
     let grid = Grid::new(NODES, Lanes::splat(depth), 7.0, Lanes::splat(radius.map_or(0.0, |r| 1.0 / r)));
     let mut column = Column::uniform(grid, &rock, Lanes::splat(start_k));
-    let mut stepper = Stepper::new(NODES);
+    let mut stepper = Stepper::new(&column.grid, &rock);
     let march = March { refine: REFINE, absorbed_limit_j_m2: Lanes::splat(f64::INFINITY) };
     let mut recorder = Recorder(Vec::new());
     let forcing = &case["forcing"];

@@ -143,7 +143,8 @@ fn crown_response_of_a_granite_at_three_depths() {
         Column::uniform(Grid::new(240, Lanes::splat(depth), 6.0, Lanes::ZERO), &rock, Lanes::splat(ambient_k));
     let mut peaks = Peaks { depth_m: [0.0, 0.010, 0.020], peak_k: [0.0; 3] };
     let march = March { refine: 10, absorbed_limit_j_m2: Lanes::splat(f64::INFINITY) };
-    march.run(&mut column, &rock, &pulse, &mut Stepper::new(240), &mut peaks);
+    let mut stepper = Stepper::new(&column.grid, &rock);
+    march.run(&mut column, &rock, &pulse, &mut stepper, &mut peaks);
     let rows = reference::table("pulse_peaks.csv");
     assert_eq!(rows.len(), 15);
     let row = rows.iter().find(|r| r.text("reading") == "constant_class_h_25").expect("the reading of the table");

@@ -213,7 +213,7 @@ fn errors_fall_with_nodes_and_steps() {
     let tables = tables();
     let (table, body) = (table(&tables, "granite"), boulder(0.75));
     let mut by_size = Vec::new();
-    for (nodes, refine) in [(19, 1), (38, 1), (76, 1), (38, 4), (76, 2), (150, 4)] {
+    for (nodes, refine) in [(14,1),(14,4),(16,1),(16,4),(19, 1),(19,4),(24,1),(24,4), (38, 1), (76, 1), (38, 4), (76, 2), (150, 4)] {
         let coarse = Resolution { nodes, refine, ..FINE };
         let mut worst = Errors::default();
         for class in ExposureClass::ALL {

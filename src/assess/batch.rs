@@ -319,7 +319,7 @@ pub fn march(
     resolution: &Resolution,
     observer: &mut impl Observer,
 ) -> (Column, Account) {
-    let mut stepper = Stepper::new(grid.len());
+    let mut stepper = Stepper::new(&grid, material);
     let mut column = Column::uniform(grid, material, start_k);
     let march = March { refine: resolution.refine, absorbed_limit_j_m2 };
     let account = march.run(&mut column, material, forcing, &mut stepper, observer);

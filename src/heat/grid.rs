@@ -1,10 +1,20 @@
-//! Nodes from the face inward.
+//! Nodes from the face inward, and the weights with which they store and pass on heat.
 //!
 //! z(s) = L sinh(b s) / sinh(b),  s = i/(n-1),  i = 0 .. n-1
 //!
 //! Node 0 lies on the face; control volumes reach half-way to the neighbours. Because the spacing is a smooth function of
-//! the index, central differences on it are of second order. L is each draw's own depth, b is common to the batch.
-//! For a face of curvature C = 1/R the area at depth z is A = (1 - C z)^2 of the face's; for a plane C = 0.
+//! the index, differences on it keep their order. L is each draw's own depth, b is common to the batch. For a face of
+//! curvature C = 1/R the area at depth z is A = (1 - C z)^2 of the face's; for a plane C = 0.
+//!
+//! Midpoint fluxes and lumped volumes V_i are exact where the heating rate r = dv/dt is uniform. What a rate that varies
+//! with depth adds is spread over the neighbours, which lifts the scheme to fourth order inside (derived by expanding r
+//! about node and midpoint, with D+ and D- its slopes to either side and d+ and d- those distances):
+//!
+//! M r = V_i r_i + D+ (p+ + A d+^2/24 - K_i) - D- (p- + A d-^2/24 - K_i),   K_i = A_i (d+^2 - d+ d- + d-^2)/12
+//!
+//! p+ and p- are the first moments of A about the node over the half cells, A d^2/24 the part of the flux at the midpoint
+//! that a varying rate makes, K_i the curvature of r. The face row leaves the curvature out: third order in a cell that is
+//! thin, while at the end symmetry stands in for the missing neighbour. M is tridiagonal as conduction itself is.
 
 use crate::numerics::lanes::Lanes;
 
@@ -13,12 +23,25 @@ use crate::numerics::lanes::Lanes;
 pub struct Grid {
     /// Depth of each node, `[n]`, face first.
     pub depth_m: Vec<Lanes>,
-    /// Control volume of each node per unit area of face, m, `[n]`.
+    /// Rows of M, `[n]`, m.
+    pub storage_m: Vec<Storage>,
+    /// Weight of each node in the heat of the column, the column sums of M, m, `[n]`.
     pub volume_m: Vec<Lanes>,
     /// Area over distance between node i and i + 1, per unit area of face, 1/m, `[n - 1]`.
     pub area_over_distance_per_m: Vec<Lanes>,
     /// Curvature of the face, 1/m; 0 is a plane.
     pub curvature_per_m: Lanes,
+}
+
+/// A row of M: what the heating rates of a node and of its neighbours store in its control volume, m.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Storage {
+    /// Of the neighbour towards the face.
+    pub above: Lanes,
+    /// Of the node.
+    pub here: Lanes,
+    /// Of the neighbour away from the face.
+    pub below: Lanes,
 }
 
 impl Grid {
@@ -31,33 +54,63 @@ impl Grid {
         for l in 0..crate::numerics::lanes::LANES {
             assert!(depth_m.0[l] * curvature_per_m.0[l] <= 1.0 + 1e-12, "a grid ends at the centre of the sphere");
         }
-        let mut grid = Grid {
-            depth_m: vec![Lanes::ZERO; n],
-            volume_m: vec![Lanes::ZERO; n],
-            area_over_distance_per_m: vec![Lanes::ZERO; n - 1],
-            curvature_per_m,
-        };
         let whole = libm::sinh(stretch);
-        for i in 0..n {
-            grid.depth_m[i] = depth_m * (libm::sinh(stretch * i as f64 / (n - 1) as f64) / whole);
-        }
+        let place = |i: usize| libm::sinh(stretch * i as f64 / (n - 1) as f64) / whole;
+        let depth_m: Vec<Lanes> = (0..n).map(|i| depth_m * place(i)).collect();
+        let side = |z: Lanes| Lanes::ONE - curvature_per_m * z;
         let third = curvature_per_m * curvature_per_m / 3.0;
         // Integral of (1 - C z)^2 from the face to z.
         let inner = |z: Lanes| z - curvature_per_m * z * z + third * z * z * z;
-        let mut above = Lanes::ZERO;
+        // First moment of (1 - C z)^2 about `z` over a half cell that reaches `h` inward, or outward where h is negative.
+        let moment = |z: Lanes, h: Lanes| {
+            let s = side(z);
+            h * h * (s * s * 0.5 - s * curvature_per_m * h * (2.0 / 3.0) + curvature_per_m * curvature_per_m * h * h * 0.25)
+        };
+        let zero = Lanes::ZERO;
+        let mut storage_m = vec![Storage { above: zero, here: zero, below: zero }; n];
+        let mut area_over_distance_per_m = Vec::with_capacity(n - 1);
+        let mut above = zero;
         for i in 0..n {
-            let below = if i + 1 < n {
-                let middle = (grid.depth_m[i] + grid.depth_m[i + 1]) * 0.5;
-                let side = Lanes::ONE - curvature_per_m * middle;
-                grid.area_over_distance_per_m[i] = side * side / (grid.depth_m[i + 1] - grid.depth_m[i]);
-                inner(middle)
-            } else {
-                inner(grid.depth_m[i])
+            let z = depth_m[i];
+            let area = side(z) * side(z);
+            let before = (i > 0).then(|| z - depth_m[i - 1]);
+            let after = (i + 1 < n).then(|| depth_m[i + 1] - z);
+            let curved = match (before, after) {
+                (Some(b), Some(a)) => area * (a * a - a * b + b * b) / 12.0,
+                (Some(b), None) => area * b * b / 12.0,
+                _ => zero,
             };
-            grid.volume_m[i] = below - above;
-            above = below;
+            let mut row = Storage { above: zero, here: zero, below: zero };
+            let mut end = z;
+            if let Some(d) = after {
+                let middle = z + d * 0.5;
+                let area = side(middle) * side(middle);
+                area_over_distance_per_m.push(area / d);
+                row.below = (moment(z, d * 0.5) + area * d * d / 24.0 - curved) / d;
+                end = middle;
+            }
+            if let Some(d) = before {
+                let middle = z - d * 0.5;
+                let area = side(middle) * side(middle);
+                row.above = (moment(z, d * -0.5) + area * d * d / 24.0 - curved) / d;
+            }
+            row.here = inner(end) - above - row.above - row.below;
+            above = inner(end);
+            storage_m[i] = row;
         }
-        grid
+        let volume_m = (0..n)
+            .map(|i| {
+                let mut sum = storage_m[i].here;
+                if i > 0 {
+                    sum += storage_m[i - 1].below;
+                }
+                if i + 1 < n {
+                    sum += storage_m[i + 1].above;
+                }
+                sum
+            })
+            .collect();
+        Grid { depth_m, storage_m, volume_m, area_over_distance_per_m, curvature_per_m }
     }
 
     /// Number of nodes.

@@ -2,14 +2,15 @@
 //!
 //! Semi-discrete equation of node i, per unit area of face, with heat content v_i:
 //!
-//! C_i dv_i/dt = F_i = g_{i-1} (T_{i-1} - T_i) - g_i (T_i - T_{i+1}) + [i = 0] q(t, T_0)
+//! C (M dv/dt)_i = F_i = g_{i-1} (T_{i-1} - T_i) - g_i (T_i - T_{i+1}) + [i = 0] q(t, T_0)
 //!
-//! C_i = rho c20 V_i;  g_i = (A/dz)_i / ( (w_i + w_{i+1})/2 );  T_i = T(v_i), b_i = dT/dv.
+//! C = rho c20;  M the storage rows of [`Grid`];  g_i = (A/dz)_i times the mean of 1/w between the nodes;  T_i = T(v_i),
+//! b_i = dT/dv.
 //!
 //! Stages of the ROS2 method (Verwer, Spee, Blom & Hundsdorfer 1999, recalled), J = dF/dv with frozen g:
 //!
-//! (C - y dt J) k1 = F(t, v) + y dt F_t
-//! (C - y dt J) k2 = F(t + dt, v + dt k1) - 2 C k1 - y dt F_t
+//! (C M - y dt J) k1 = F(t, v) + y dt F_t
+//! (C M - y dt J) k2 = F(t + dt, v + dt k1) - 2 C M k1 - y dt F_t
 //! v(t + dt) = v + dt (3/2 k1 + 1/2 k2),   y = 1 - 1/sqrt 2
 //!
 //! It is of second order for any J, so freezing the conductances in J costs no order, and L-stable for an exact one.
@@ -19,6 +20,7 @@
 
 use super::boundary::Exchange;
 use super::column::Column;
+use super::grid::{Grid, Storage};
 use super::material::Material;
 use crate::numerics::lanes::Lanes;
 
@@ -31,33 +33,48 @@ const STAGE_CHANGE_K: f64 = 150.0;
 const COLDEST_K: f64 = 200.0;
 const HOTTEST_K: f64 = 2000.0;
 
-/// Work arrays of the step, reused from step to step.
+/// Work arrays of the step, reused from step to step; all `[n]`, one entry a node.
 #[derive(Debug, Clone)]
 pub struct Stepper {
-    /// Reciprocal pivot of each row, after elimination.
-    pivot: Vec<Lanes>,
-    /// k_{i} = rhs_i pivot_i + follow_i k_{i-1}.
+    /// Rows of C M, J/m2K.
+    storage: Vec<Storage>,
+    /// Solution of each row for a neighbour towards the face that stays as it is, after elimination.
+    alone: Vec<Lanes>,
+    /// k_i = alone_i + follow_i k_{i-1}.
     follow: Vec<Lanes>,
-    /// y dt g_i.
-    link: Vec<Lanes>,
-    rhs: Vec<Lanes>,
+    /// Reciprocal pivot of each row.
+    pivot: Vec<Lanes>,
+    /// Matrix entry of the neighbour away from the face.
+    below: Vec<Lanes>,
+    /// First stage.
     k1: Vec<Lanes>,
-    stage_temperature: Vec<Lanes>,
-    stage_resistivity: Vec<Lanes>,
+    stage: Vec<Node>,
+}
+
+/// What conduction needs of a node.
+#[derive(Debug, Clone, Copy)]
+struct Node {
+    temperature_k: Lanes,
+    resistivity: Lanes,
+    /// Factor on the conductivity from history.
+    factor: Lanes,
 }
 
 impl Stepper {
-    /// Work arrays for `n` nodes.
-    pub fn new(n: usize) -> Stepper {
+    /// Work arrays for a column of `material` on `grid`.
+    pub fn new(grid: &Grid, material: &Material) -> Stepper {
+        let n = grid.len();
+        let c = material.capacity_j_m3_k;
+        let storage = |row: &Storage| Storage { above: c * row.above, here: c * row.here, below: c * row.below };
         let zero = vec![Lanes::ZERO; n];
         Stepper {
-            pivot: zero.clone(),
+            storage: grid.storage_m.iter().map(storage).collect(),
+            alone: zero.clone(),
             follow: zero.clone(),
-            link: zero.clone(),
-            rhs: zero.clone(),
-            k1: zero.clone(),
-            stage_temperature: zero.clone(),
-            stage_resistivity: zero,
+            pivot: zero.clone(),
+            below: zero.clone(),
+            k1: zero,
+            stage: vec![Node { temperature_k: Lanes::ZERO, resistivity: Lanes::ONE, factor: Lanes::ONE }; n],
         }
     }
 
@@ -72,79 +89,137 @@ impl Stepper {
         then: &Exchange,
         dt_s: Lanes,
     ) -> Lanes {
+        if material.remembers() {
+            self.step_of::<true>(column, material, now, then, dt_s)
+        } else {
+            self.step_of::<false>(column, material, now, then, dt_s)
+        }
+    }
+
+    /// [`Stepper::step`] for rock whose conductivity has a history (`REMEMBERS`), or has none.
+    #[inline(always)]
+    fn step_of<const REMEMBERS: bool>(
+        &mut self,
+        column: &mut Column,
+        material: &Material,
+        now: &Exchange,
+        then: &Exchange,
+        dt_s: Lanes,
+    ) -> Lanes {
         let n = column.content_k.len();
         let gdt = dt_s * GAMMA;
-        let (volume, spread) = (&column.grid.volume_m[..n], &column.grid.area_over_distance_per_m[..n - 1]);
+        let spread = &column.grid.area_over_distance_per_m[..n - 1];
         let (content, slope) = (&mut column.content_k[..n], &column.slope[..n]);
         let (temperature, hottest) = (&column.temperature_k[..n], &column.hottest_k[..n]);
-        let factor = &column.conductivity_factor[..n];
-        let (pivot, follow, link) = (&mut self.pivot[..n], &mut self.follow[..n], &mut self.link[..n]);
-        let (rhs, k1) = (&mut self.rhs[..n], &mut self.k1[..n]);
-        let (stage_t, stage_w) = (&mut self.stage_temperature[..n], &mut self.stage_resistivity[..n]);
-        let capacity = material.capacity_j_m3_k;
-        let remembers = material.remembers();
+        let history = &column.conductivity_factor[..n];
+        let (alone, follow, pivot, below) =
+            (&mut self.alone[..n], &mut self.follow[..n], &mut self.pivot[..n], &mut self.below[..n]);
+        let (storage, k1, stage) = (&self.storage[..n], &mut self.k1[..n], &mut self.stage[..n]);
+        let last = n - 1;
 
-        for i in 0..n {
-            let w = material.resistivity(temperature[i], slope[i]);
-            stage_w[i] = if remembers { w / factor[i] } else { w };
-        }
+        // First stage, and elimination from the deep end to the face.
+        let node = |i: usize| Node {
+            temperature_k: temperature[i],
+            resistivity: material.resistivity(temperature[i], slope[i]),
+            factor: if REMEMBERS { history[i] } else { Lanes::ONE },
+        };
         let flux_now = now.flux_into(temperature[0]);
         let flux_drift = (then.flux_into(temperature[0]) - flux_now) * GAMMA;
-        net_power(spread, temperature, stage_w, flux_now, rhs, |i, g| link[i] = gdt * g);
-        rhs[0] += flux_drift;
-
-        // Eliminate from the deep end to the face.
         let face_link = gdt * now.stiffness_w_m2_k(temperature[0]);
+        let mut lower = node(last);
+        let (mut flow_below, mut link_below) = (Lanes::ZERO, Lanes::ZERO);
         for i in (0..n).rev() {
-            let mut diagonal = capacity * volume[i];
-            let above = if i > 0 { link[i - 1] } else { face_link };
-            if i + 1 < n {
-                // Row i: -link_i b_{i+1} k_{i+1}, with k_{i+1} = rhs pivot + follow k_i.
-                let carry = link[i] * slope[i + 1];
-                diagonal += (above + link[i]) * slope[i] - carry * follow[i + 1];
-                rhs[i] += carry * (rhs[i + 1] * pivot[i + 1]);
-            } else {
-                diagonal += above * slope[i];
-            }
-            pivot[i] = Lanes::ONE / diagonal;
+            let (mut flow, mut link) = (flux_now + flux_drift, face_link);
+            let mut upper = lower;
             if i > 0 {
-                follow[i] = link[i - 1] * slope[i - 1] * pivot[i];
+                upper = node(i - 1);
+                let g = conductance::<REMEMBERS>(spread[i - 1], &upper, &lower);
+                flow = g * (upper.temperature_k - lower.temperature_k);
+                link = gdt * g;
             }
+            let mut diagonal = storage[i].here + (link + link_below) * slope[i];
+            let mut right = flow - flow_below;
+            if i < last {
+                let entry = storage[i].below - link_below * slope[i + 1];
+                below[i] = entry;
+                diagonal += entry * follow[i + 1];
+                right -= entry * alone[i + 1];
+            }
+            let reciprocal = Lanes::ONE / diagonal;
+            pivot[i] = reciprocal;
+            alone[i] = right * reciprocal;
+            if i > 0 {
+                follow[i] = (link * slope[i - 1] - storage[i].above) * reciprocal;
+            }
+            (lower, flow_below, link_below) = (upper, flow, link);
         }
-        k1[0] = rhs[0] * pivot[0];
-        for i in 1..n {
-            k1[i] = rhs[i] * pivot[i] + follow[i] * k1[i - 1];
-        }
+        k1[0] = alone[0];
         let entered_1 = flux_now + flux_drift - face_link * slope[0] * k1[0];
+        for i in 0..n {
+            if i > 0 {
+                k1[i] = alone[i] + follow[i] * k1[i - 1];
+            }
+            let (t, s) = material.temperature(content[i] + dt_s * k1[i], hottest[i]);
+            let near = t.max(Lanes::splat(COLDEST_K)).min(Lanes::splat(HOTTEST_K));
+            stage[i] = Node {
+                temperature_k: t,
+                resistivity: material.resistivity(near, s),
+                // The factor of this stage's own temperature: the one from the start of the step would cost an order.
+                factor: if REMEMBERS {
+                    material.conductivity_factor(near, hottest[i].max(near))
+                } else {
+                    Lanes::ONE
+                },
+            };
+        }
 
         // Second stage, same matrix.
-        for i in 0..n {
-            let (t, s) = material.temperature(content[i] + dt_s * k1[i], hottest[i]);
-            stage_t[i] = t;
-            let t = t.max(Lanes::splat(COLDEST_K)).min(Lanes::splat(HOTTEST_K));
-            let w = material.resistivity(t, s);
-            // The factor of this stage's own temperature: the one from the start of the step would cost an order.
-            stage_w[i] = if remembers { w / material.conductivity_factor(t, hottest[i].max(t)) } else { w };
-        }
-        let flux_then = stage_flux(then, temperature[0], stage_t[0]);
-        net_power(spread, stage_t, stage_w, flux_then, rhs, |_, _| {});
-        rhs[0] -= flux_drift;
+        let flux_then = stage_flux(then, temperature[0], stage[0].temperature_k);
+        let mut flow_below = Lanes::ZERO;
         for i in (0..n).rev() {
-            rhs[i] -= capacity * volume[i] * k1[i] * 2.0;
-            if i + 1 < n {
-                rhs[i] += link[i] * slope[i + 1] * (rhs[i + 1] * pivot[i + 1]);
+            let mut right = storage[i].here * k1[i];
+            let mut flow = flux_then - flux_drift;
+            if i > 0 {
+                let g = conductance::<REMEMBERS>(spread[i - 1], &stage[i - 1], &stage[i]);
+                flow = g * (stage[i - 1].temperature_k - stage[i].temperature_k);
+                right += storage[i].above * k1[i - 1];
             }
+            if i < last {
+                right += storage[i].below * k1[i + 1];
+            }
+            right = flow - flow_below - right * 2.0;
+            if i < last {
+                right -= below[i] * alone[i + 1];
+            }
+            alone[i] = right * pivot[i];
+            flow_below = flow;
         }
-        let mut k2 = rhs[0] * pivot[0];
+        let mut k2 = alone[0];
         let entered_2 = flux_then - flux_drift - face_link * slope[0] * k2;
-        content[0] += dt_s * (k1[0] * 1.5 + k2 * 0.5);
+        let (first, second) = (dt_s * 1.5, dt_s * 0.5);
+        content[0] += first * k1[0] + second * k2;
         for i in 1..n {
-            k2 = rhs[i] * pivot[i] + follow[i] * k2;
-            content[i] += dt_s * (k1[i] * 1.5 + k2 * 0.5);
+            k2 = alone[i] + follow[i] * k2;
+            content[i] += first * k1[i] + second * k2;
         }
         column.refresh(material);
         dt_s * (entered_1 + entered_2) * 0.5
     }
+}
+
+/// Conductance between neighbours, W/m2K: area over distance times the mean conductivity between their temperatures.
+///
+/// The mean of 1/w over a w that is linear in T is ln(w1/w0)/(w1 - w0) = 2/(w0 + w1) (1 + y^2/3 + ..), y = (w1 - w0)/(w0 + w1).
+#[inline(always)]
+fn conductance<const REMEMBERS: bool>(area_over_distance: Lanes, a: &Node, b: &Node) -> Lanes {
+    let (mut wa, mut wb, mut spread) = (a.resistivity, b.resistivity, area_over_distance);
+    if REMEMBERS {
+        // w/f of each, brought to one denominator: a division less.
+        (wa, wb, spread) = (wa * b.factor, wb * a.factor, spread * (a.factor * b.factor));
+    }
+    let reciprocal = Lanes::ONE / (wa + wb);
+    let y = (wb - wa) * reciprocal;
+    spread * reciprocal * (y * y * (2.0 / 3.0) + 2.0)
 }
 
 /// Flux into a face at `stage_k`, from `start_k` at the start of the step.
@@ -157,26 +232,4 @@ fn stage_flux(then: &Exchange, start_k: Lanes, stage_k: Lanes) -> Lanes {
     let limit = Lanes::splat(STAGE_CHANGE_K);
     let near = stage_k.min(start_k + limit).max(start_k - limit);
     then.flux_into(near) - then.stiffness_w_m2_k(near) * (stage_k - near)
-}
-
-/// F of every node, W/m2 of face, from temperatures and resistivities; shows each conductance to `keep`.
-#[inline(always)]
-fn net_power(
-    spread: &[Lanes],
-    t: &[Lanes],
-    w: &[Lanes],
-    face_flux: Lanes,
-    power: &mut [Lanes],
-    mut keep: impl FnMut(usize, Lanes),
-) {
-    let n = power.len();
-    let mut from_above = face_flux;
-    for i in 0..n - 1 {
-        let g = spread[i] * 2.0 / (w[i] + w[i + 1]);
-        keep(i, g);
-        let down = g * (t[i] - t[i + 1]);
-        power[i] = from_above - down;
-        from_above = down;
-    }
-    power[n - 1] = from_above;
 }

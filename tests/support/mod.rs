@@ -69,7 +69,7 @@ pub fn run(
 ) -> (Column, Account) {
     let grid = Grid::new(nodes, Lanes::splat(depth_m), stretch, Lanes::splat(curvature_per_m));
     let mut column = Column::uniform(grid, material, Lanes::splat(start_k));
-    let mut stepper = Stepper::new(nodes);
+    let mut stepper = Stepper::new(&column.grid, material);
     let march = March { refine: 1, absorbed_limit_j_m2: Lanes::splat(f64::INFINITY) };
     let account = march.run(&mut column, material, forcing, &mut stepper, &mut Nobody);
     (column, account)
