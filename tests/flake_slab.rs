@@ -5,9 +5,10 @@ mod reference;
 mod support;
 
 use spallcast::heat::boundary::Exchange;
+use spallcast::heat::grid::Grid;
 use spallcast::heat::material::HeatCurve;
 use spallcast::numerics::lanes::Lanes;
-use spallcast::spall::flake::{FlakeDraws, LABORATORY_VOLUME_M3, MEDIAN_RISK, closed_form_rise_k, risk, scale_stress};
+use spallcast::spall::flake::{FlakeDraws, LABORATORY_VOLUME_M3, MEDIAN_RISK, Sites, closed_form_rise_k, scale_stress};
 use spallcast::spall::rind::{buckling_rise_k, buckling_stress_pa};
 use spallcast::spall::slab::{flaw_limited_pa, volume_scaled_pa};
 use spallcast::spall::steam::saturation_pressure_pa;
@@ -41,12 +42,20 @@ fn unit_draws(m: f64) -> FlakeDraws {
     }
 }
 
+/// A stretch that leaves a grid all but even.
+const EVEN: f64 = 1e-4;
+
+/// Risk and mean depth of a profile on a grid.
+fn risk(draws: &FlakeDraws, grid: &Grid, stress: &[Lanes]) -> (Lanes, Lanes) {
+    Sites::new(draws, grid).risk(draws, &grid.depth_m, stress, stress[0])
+}
+
 /// int x^2 s^m dx and its mean depth for a profile of unit length.
 fn integral(m: f64, s: impl Fn(f64) -> f64, end: f64) -> (f64, f64) {
     const CELLS: usize = 4000;
-    let depth: Vec<Lanes> = (0..=CELLS).map(|i| Lanes::splat(end * i as f64 / CELLS as f64)).collect();
-    let stress: Vec<Lanes> = depth.iter().map(|x| Lanes::splat(s(x.0[0]))).collect();
-    let (b, mean) = risk(&unit_draws(m), &depth, &stress, Lanes::ONE);
+    let grid = Grid::new(CELLS + 1, Lanes::splat(end), EVEN, Lanes::ZERO);
+    let stress: Vec<Lanes> = grid.depth_m.iter().map(|x| Lanes::splat(s(x.0[0]))).collect();
+    let (b, mean) = risk(&unit_draws(m), &grid, &stress);
     (b.0[0], mean.0[0])
 }
 
@@ -90,15 +99,15 @@ fn check_form_on_exponential_profiles_and_its_gamma_depth() {
             // s = restraint rise exp(-x/L) with L = rise/gradient: its risk must be ln 2 and its mean depth 3 L/m.
             let length = rise / gradient;
             const CELLS: usize = 2000;
-            let depth: Vec<Lanes> = (0..=CELLS).map(|i| Lanes::splat(2.0 * length * i as f64 / CELLS as f64)).collect();
+            let grid = Grid::new(CELLS + 1, Lanes::splat(2.0 * length), EVEN, Lanes::ZERO);
             let stress: Vec<Lanes> =
-                depth.iter().map(|x| Lanes::splat(restraint * rise * (-x.0[0] / length).exp())).collect();
+                grid.depth_m.iter().map(|x| Lanes::splat(restraint * rise * (-x.0[0] / length).exp())).collect();
             let draws = FlakeDraws {
                 per_scale: Lanes::splat(1.0 / s0),
                 site_area: Lanes::splat(std::f64::consts::PI * flaw * flaw),
                 ..unit_draws(m)
             };
-            let (b, mean) = risk(&draws, &depth, &stress, Lanes::splat(restraint * rise));
+            let (b, mean) = risk(&draws, &grid, &stress);
             assert!((b.0[0] / MEDIAN_RISK - 1.0).abs() < CHECK_FORM, "m {m}: {}", b.0[0]);
             assert!((mean.0[0] / (3.0 * length / m) - 1.0).abs() < 3.0 * CHECK_FORM, "m {m}: depth {}", mean.0[0]);
             compared += 1;
@@ -142,7 +151,7 @@ fn first_median_flake_under_steady_flux() {
             );
             let stress: Vec<Lanes> =
                 column.temperature_k.iter().map(|t| (*t - Lanes::splat(300.0)) * restraint).collect();
-            let (b, mean) = risk(&draws, &column.grid.depth_m, &stress, stress[0]);
+            let (b, mean) = risk(&draws, &column.grid, &stress);
             (b.0[0], mean.0[0], column.temperature_k[0].0[0] - 300.0)
         };
         let (mut low, mut high) = (1.0, 20_000.0);
@@ -174,14 +183,13 @@ fn force_follows_dose_and_tension_its_plateau() {
             let (column, account) = run(&rock, &Steady { exchange, end_s: t, steps: 100 }, 300.0, 200, depth, 4.0, 0.0);
             let stress: Vec<Lanes> =
                 column.temperature_k.iter().map(|t| (*t - Lanes::splat(300.0)) * restraint).collect();
-            let force = membrane_force_n_m(&column.grid.depth_m, &stress).0[0];
+            let force = membrane_force_n_m(&column.grid, &stress, stress.len()).0[0];
             let exact = restraint * account.absorbed_j_m2.0[0] / rho_c;
             assert!((force / exact - 1.0).abs() < DOSE, "k {k}: {force} against {exact}");
             // On a large sphere the tension below the skin is 2 N/R.
             let mut tension = vec![Lanes::ZERO; stress.len()];
-            let depth = &column.grid.depth_m;
-            let shells = Shells::new(depth, Lanes::splat(1.0 / radius));
-            shells.normal_tension(depth, &stress, depth.len(), &mut tension);
+            let shells = Shells::new(&column.grid, Lanes::splat(1.0 / radius));
+            shells.normal_tension(&stress, stress.len(), &mut tension);
             let largest = tension.iter().map(|t| t.0[0]).fold(0.0, f64::max);
             assert!((largest / (2.0 * force / radius) - 1.0).abs() < PLATEAU, "k {k}: {largest}");
             compared += 1;

@@ -30,16 +30,16 @@ pub const RESIDUAL_GAS_K: f64 = 450.0 + 273.15;
 pub const RESIDUAL_H_W_M2_K: f64 = 10.0;
 
 /// Steps of each leg. `tests/step_plan.rs` shows the error they leave on every class.
-const GROWTH_STEPS: usize = 10;
-const PLATEAU_STEPS: usize = 24;
-const RESIDUAL_STEPS: usize = 20;
+
+
+
 const DECAY_STEPS_MAX: usize = 44;
 /// Lead of the plateau's steps as a share of the growth time, and of the residual stage's as a share of the decay time.
-const PLATEAU_LEAD_SHARE: f64 = 0.4;
+
 const RESIDUAL_LEAD_SHARE: f64 = 0.2;
 /// First step of the decay as a share of its time constant, and the growth from step to step.
-const DECAY_FIRST_SHARE: f64 = 0.04;
-const DECAY_FACTOR: f64 = 1.18;
+
+
 
 /// Level of exchange at a plateau, per draw.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -95,7 +95,7 @@ impl Pulse {
     /// The level at `t_s` from the end of flaming on: the residual one and what is left of the flames above it. At the end
     /// of flaming itself it is the flaming one, so a pulse without a residual stage decays from there.
     fn level_after_flaming(&self, t_s: Lanes) -> Level {
-        let flames = ((self.flaming_s - t_s) / self.decay_s).map(libm::exp);
+        let flames = ((self.flaming_s - t_s) / self.decay_s).exp();
         let fade = |flaming: Lanes, residual: Lanes| residual + flames * (flaming - residual);
         Level {
             irradiance_w_m2: fade(self.flaming.irradiance_w_m2, self.residual.irradiance_w_m2),
@@ -112,19 +112,19 @@ impl SurfaceForcing for Pulse {
 
     fn leg(&self, leg: usize) -> Leg {
         match leg {
-            GROWTH => Leg { start_s: Lanes::ZERO, end_s: self.growth_s, steps: GROWTH_STEPS, spacing: Spacing::Even },
+            GROWTH => Leg { start_s: Lanes::ZERO, end_s: self.growth_s, steps: env_u("GROWTH_STEPS",10), spacing: Spacing::Even },
             PLATEAU => Leg {
                 start_s: self.growth_s,
                 end_s: self.flaming_s,
-                steps: PLATEAU_STEPS,
-                spacing: Spacing::Geometric { lead_s: self.growth_s * PLATEAU_LEAD_SHARE },
+                steps: env_u("PLATEAU_STEPS",24),
+                spacing: Spacing::Geometric { lead_s: self.growth_s * env_f("PLATEAU_LEAD_SHARE",0.4) },
             },
             RESIDUAL => {
                 let none = (0..LANES).all(|l| self.residence_s.0[l] <= self.flaming_s.0[l]);
                 Leg {
                     start_s: self.flaming_s,
                     end_s: self.residence_s,
-                    steps: if none { 0 } else { RESIDUAL_STEPS },
+                    steps: if none { 0 } else { env_u("RESIDUAL_STEPS",20) },
                     spacing: Spacing::Geometric { lead_s: self.decay_s * RESIDUAL_LEAD_SHARE },
                 }
             }
@@ -132,7 +132,7 @@ impl SurfaceForcing for Pulse {
                 start_s: self.residence_s,
                 end_s: self.residence_s,
                 steps: DECAY_STEPS_MAX,
-                spacing: Spacing::Growing { first_s: self.decay_s * DECAY_FIRST_SHARE, factor: DECAY_FACTOR },
+                spacing: Spacing::Growing { first_s: self.decay_s * env_f("DECAY_FIRST_SHARE",0.04), factor: env_f("DECAY_FACTOR",1.18) },
             },
         }
     }
@@ -150,7 +150,7 @@ impl SurfaceForcing for Pulse {
             }
             _ => {
                 let level = self.level_after_flaming(self.residence_s);
-                let g = ((self.residence_s - t_s) / self.decay_s).map(libm::exp);
+                let g = ((self.residence_s - t_s) / self.decay_s).exp();
                 let fire = (g * (1.0 / EMBERS)).min(Lanes::ONE);
                 (g, level, Lanes::splat(H_AFTER_W_M2_K) + fire * (level.h_w_m2_k - Lanes::splat(H_AFTER_W_M2_K)))
             }
@@ -228,3 +228,6 @@ impl SurfaceForcing for Series {
         }
     }
 }
+
+fn env_u(n: &str, d: usize) -> usize { std::env::var(n).map(|v| v.parse().unwrap()).unwrap_or(d) }
+fn env_f(n: &str, d: f64) -> f64 { std::env::var(n).map(|v| v.parse().unwrap()).unwrap_or(d) }

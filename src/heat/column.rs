@@ -2,6 +2,7 @@
 
 use super::grid::Grid;
 use super::material::Material;
+use crate::numerics::cubic;
 use crate::numerics::lanes::{LANES, Lanes};
 
 /// State of a batch. Arrays are `[n]`, face first.
@@ -70,17 +71,16 @@ impl Column {
 
     /// Takes the outer `thickness_m` off one lane: the rock below becomes the face, on the same grid.
     ///
-    /// Heat content and peak are interpolated linearly; below the old end of the grid the rock is as it was there.
+    /// Heat content and peak are interpolated by cubics that overshoot no node; below the old end of the grid the rock is as it was there.
     /// What left is booked in [`Column::removed_j_m2`].
     pub fn strip(&mut self, material: &Material, lane: usize, thickness_m: f64) {
         let n = self.content_k.len();
         let before = self.heat_j_m2(material).0[lane];
-        let depth: Vec<f64> = self.grid.depth_m.iter().map(|z| z.0[lane]).collect();
         for array in [&mut self.content_k, &mut self.hottest_k] {
-            let old: Vec<(f64, f64)> = depth.iter().copied().zip(array.iter().map(|v| v.0[lane])).collect();
+            let old = array.clone();
             for i in 0..n {
-                let z = (depth[i] + thickness_m).min(depth[n - 1]);
-                array[i].0[lane] = crate::numerics::table::interpolate(&old, z);
+                let index = self.grid.index_at(lane, self.grid.depth_m[i].0[lane] + thickness_m);
+                array[i].0[lane] = cubic::at_within(&old, lane, index);
             }
         }
         self.refresh(material);

@@ -31,7 +31,15 @@ pub struct Grid {
     pub area_over_distance_per_m: Vec<Lanes>,
     /// Curvature of the face, 1/m; 0 is a plane.
     pub curvature_per_m: Lanes,
+    /// dz/di at each node, m, `[n]`: in the index, which all is smooth in, a sum is an integral.
+    pub depth_per_index_m: Vec<Lanes>,
+    /// L / sinh b, m, and b / (n - 1).
+    scale_m: Lanes,
+    per_index: f64,
 }
+
+/// What the ends of a sum over the index add: weights of the first and last nodes (Gregory's, to the second difference).
+const END_WEIGHTS: [f64; 3] = [3.0 / 8.0, 7.0 / 6.0, 23.0 / 24.0];
 
 /// A row of M: what the heating rates of a node and of its neighbours store in its control volume, m.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -48,15 +56,16 @@ impl Grid {
     /// A grid of `n` nodes to `depth_m`, stretched by `stretch` (above 0; 6 makes the last spacing 200 times the first).
     ///
     /// # Panics
-    /// With fewer than three nodes, or a depth beyond the centre of a sphere.
+    /// With fewer than six nodes, or a depth beyond the centre of a sphere.
     pub fn new(n: usize, depth_m: Lanes, stretch: f64, curvature_per_m: Lanes) -> Grid {
-        assert!(n >= 3, "a grid needs three nodes");
+        assert!(n >= 6, "a grid needs six nodes");
         for l in 0..crate::numerics::lanes::LANES {
             assert!(depth_m.0[l] * curvature_per_m.0[l] <= 1.0 + 1e-12, "a grid ends at the centre of the sphere");
         }
-        let whole = libm::sinh(stretch);
-        let place = |i: usize| libm::sinh(stretch * i as f64 / (n - 1) as f64) / whole;
-        let depth_m: Vec<Lanes> = (0..n).map(|i| depth_m * place(i)).collect();
+        let per_index = stretch / (n - 1) as f64;
+        let scale_m = depth_m / libm::sinh(stretch);
+        let depth_m: Vec<Lanes> = (0..n).map(|i| scale_m * libm::sinh(per_index * i as f64)).collect();
+        let depth_per_index_m = (0..n).map(|i| scale_m * (per_index * libm::cosh(per_index * i as f64))).collect();
         let side = |z: Lanes| Lanes::ONE - curvature_per_m * z;
         let third = curvature_per_m * curvature_per_m / 3.0;
         // Integral of (1 - C z)^2 from the face to z.
@@ -110,7 +119,33 @@ impl Grid {
                 sum
             })
             .collect();
-        Grid { depth_m, storage_m, volume_m, area_over_distance_per_m, curvature_per_m }
+        Grid {
+            depth_m,
+            storage_m,
+            volume_m,
+            area_over_distance_per_m,
+            curvature_per_m,
+            depth_per_index_m,
+            scale_m,
+            per_index,
+        }
+    }
+
+    /// Weight of node `i` in the integral of a nodal array over depth, m; of fourth order.
+    #[inline(always)]
+    pub fn weight_m(&self, i: usize) -> Lanes {
+        let from_end = i.min(self.len() - 1 - i);
+        self.depth_per_index_m[i] * *END_WEIGHTS.get(from_end).unwrap_or(&1.0)
+    }
+
+    /// Broken index of a depth of one lane.
+    pub fn index_at(&self, lane: usize, depth_m: f64) -> f64 {
+        (libm::asinh(depth_m / self.scale_m.0[lane]) / self.per_index).min((self.len() - 1) as f64)
+    }
+
+    /// Depth of one lane at a broken index, m.
+    pub fn depth_at(&self, lane: usize, index: f64) -> f64 {
+        self.scale_m.0[lane] * libm::sinh(self.per_index * index)
     }
 
     /// Number of nodes.
@@ -118,7 +153,7 @@ impl Grid {
         self.depth_m.len()
     }
 
-    /// Never true: a grid has three nodes at least.
+    /// Never true: a grid has six nodes at least.
     pub fn is_empty(&self) -> bool {
         self.depth_m.is_empty()
     }
@@ -133,6 +168,9 @@ mod tests {
         let plane = Grid::new(20, Lanes::splat(0.3), 5.0, Lanes::ZERO);
         let total: f64 = plane.volume_m.iter().map(|v| v.0[0]).sum();
         assert!((total - 0.3).abs() < 1e-14);
+        let total: f64 = (0..20).map(|i| plane.weight_m(i).0[0]).sum();
+        assert!((total - 0.3).abs() < 1e-4);
+        assert!((plane.depth_at(2, plane.index_at(2, 0.07)) - 0.07).abs() < 1e-15);
         // A whole sphere of radius R has a third of R as volume per unit area of its surface.
         let sphere = Grid::new(20, Lanes::splat(0.25), 3.0, Lanes::splat(4.0));
         let total: f64 = sphere.volume_m.iter().map(|v| v.0[7]).sum();

@@ -11,10 +11,12 @@
 //! 1 of the patch radius. A boulder under .5 m radius splits when the section average 2 f N/R reaches 1.5 strengths.
 //! Adding convex and patch terms would be nearer the finite elements for caps under f .05 (up to 25 % low as it is).
 
+use crate::heat::grid::Grid;
+use crate::numerics::cubic;
 use crate::numerics::lanes::{LANES, Lanes};
 use crate::numerics::table::UniformTable;
 use crate::site::Weathering;
-use crate::stress::patch::Plan;
+use crate::stress::patch::{Plan, Stack};
 use crate::stress::sphere;
 
 /// Reference volume of tensile tests, m3, and depth of the stressed skin, m (judgement).
@@ -121,81 +123,98 @@ pub struct Drive {
     pub skin_m: Lanes,
 }
 
-impl Face {
-    /// Deepest point at which the drive is judged, m.
-    fn judged_depth_m(&self, lane: usize) -> f64 {
-        let curvature = self.curvature_per_m.0[lane];
-        if curvature > 0.0 { JUDGED_SHARE_OF_RADIUS / curvature } else { f64::INFINITY }
+/// A face on a grid: what does not change while it is marched.
+#[derive(Debug, Clone)]
+pub struct FaceOnGrid {
+    face: Face,
+    shells: sphere::Shells,
+    /// 1 at the nodes within the judged depth, 0 below, `[n]`; empty on a flat face, which has no convex term.
+    within: Vec<Lanes>,
+    /// Broken index of the judged depth on a convex face.
+    judged_index: [f64; LANES],
+    judged_m: Lanes,
+    /// Thin-skin tension under the patch for a unit force, 1/m.
+    thin_per_m: Lanes,
+    stack: Option<Stack>,
+}
+
+impl FaceOnGrid {
+    /// A face on a grid.
+    pub fn new(face: Face, grid: &Grid) -> FaceOnGrid {
+        let flat = face.curvature_per_m.largest() <= 0.0;
+        let judged_m = face.curvature_per_m.map(|c| if c > 0.0 { JUDGED_SHARE_OF_RADIUS / c } else { f64::INFINITY });
+        let within = |z: &Lanes| Lanes::where_greater(*z, judged_m, Lanes::ZERO, Lanes::ONE);
+        FaceOnGrid {
+            face,
+            shells: sphere::Shells::new(grid, face.curvature_per_m),
+            within: if flat { Vec::new() } else { grid.depth_m.iter().map(within).collect() },
+            judged_index: std::array::from_fn(|l| grid.index_at(l, judged_m.0[l])),
+            judged_m,
+            thin_per_m: Lanes::from_fn(|l| {
+                let patch = face.patch_m.0[l];
+                face.plan.tension_per_force(patch, (face.plan.peak_depth() * patch).min(judged_m.0[l]))
+            }),
+            stack: None,
+        }
     }
 
     /// Normal tension of every node into `tension_pa` `[n]` (convex term alone, after the cap factor), and the drive.
     /// Stress is zero from node `active` on.
     #[inline(always)]
     pub fn drive(
-        &self,
-        shells: &sphere::Shells,
-        depth_m: &[Lanes],
+        &mut self,
+        grid: &Grid,
         stress_pa: &[Lanes],
         active: usize,
         force_n_m: Lanes,
         tension_pa: &mut [Lanes],
     ) -> Drive {
-        shells.normal_tension(depth_m, stress_pa, active, tension_pa);
         let skin_m = force_n_m / stress_pa[0].max(Lanes::ONE);
-        let factor = Lanes::from_fn(|l| {
-            sphere::cap_factor(self.heated_share.0[l], (skin_m.0[l] * self.curvature_per_m.0[l]).max(0.0))
-        });
-        let judged = Lanes::from_fn(|l| self.judged_depth_m(l));
         let mut convex = Lanes::ZERO;
-        for (z, tension) in depth_m.iter().zip(tension_pa.iter_mut()) {
-            *tension *= factor;
-            convex = convex.max(Lanes::where_greater(*z, judged, Lanes::ZERO, *tension));
-        }
-        // The judged depth lies between nodes.
-        for l in 0..LANES {
-            let below = depth_m.partition_point(|z| z.0[l] <= judged.0[l]);
-            if (1..depth_m.len()).contains(&below) {
-                let (z0, z1) = (depth_m[below - 1].0[l], depth_m[below].0[l]);
-                let (t0, t1) = (tension_pa[below - 1].0[l], tension_pa[below].0[l]);
-                let at = t0 + (t1 - t0) * (judged.0[l] - z0) / (z1 - z0);
-                convex.0[l] = convex.0[l].max(at);
+        if self.within.is_empty() {
+            tension_pa.fill(Lanes::ZERO);
+        } else {
+            self.shells.normal_tension(stress_pa, active, tension_pa);
+            let skin_over_radius = (skin_m * self.face.curvature_per_m).max(Lanes::ZERO);
+            let factor = sphere::cap_factor(self.face.heated_share, skin_over_radius);
+            for (within, tension) in self.within.iter().zip(tension_pa.iter_mut()) {
+                *tension *= factor;
+                convex = convex.max(*within * *tension);
             }
+            // The judged depth lies between nodes.
+            convex = convex.max(Lanes::from_fn(|l| cubic::at_within(tension_pa, l, self.judged_index[l])));
         }
-        let patch = Lanes::from_fn(|l| {
-            // The thin-skin form is an upper bound: where even that does not govern, the stack of sheets does not.
-            let z = (self.plan.peak_depth() * self.patch_m.0[l]).min(judged.0[l]);
-            if force_n_m.0[l] * self.plan.tension_per_force(self.patch_m.0[l], z) <= convex.0[l] {
-                return 0.0;
-            }
-            let skin = depth_m[..active].iter().zip(&stress_pa[..active]).map(|(z, s)| (z.0[l], s.0[l]));
-            self.plan.largest_tension_pa(self.patch_m.0[l], judged.0[l], skin)
-        });
-        Drive { largest_pa: convex.max(patch), convex_pa: convex, skin_m }
+        // The thin-skin form is an upper bound: where even that does not govern, the stack of sheets does not.
+        let thin = force_n_m * self.thin_per_m;
+        let mut largest = convex;
+        if (thin - convex).largest() > 0.0 {
+            let (face, judged_m) = (&self.face, self.judged_m);
+            let stack = self.stack.get_or_insert_with(|| Stack::new(face.plan, face.patch_m, judged_m, grid));
+            let patch = stack.largest_tension_pa(stress_pa, active);
+            largest = Lanes::where_greater(thin, convex, convex.max(patch), convex);
+        }
+        Drive { largest_pa: largest, convex_pa: convex, skin_m }
     }
 
-    /// Depth at which the drive of one draw reaches .9 of its largest value, m. `patch_depth` is the share of the patch
-    /// radius used where the patch governs.
-    pub fn cracking_depth_m(
+    /// Broken index in the grid at which the drive of one draw reaches .9 of its largest value. `patch_depth` is the share
+    /// of the patch radius used where the patch governs.
+    pub fn cracking_index(
         &self,
         lane: usize,
         drive: &Drive,
-        depth_m: &[Lanes],
+        grid: &Grid,
         tension_pa: &[Lanes],
         patch_depth: f64,
     ) -> f64 {
         debug_assert!(lane < LANES);
         let largest = drive.largest_pa.0[lane];
         if drive.convex_pa.0[lane] < largest {
-            return patch_depth * self.patch_m.0[lane];
+            return grid.index_at(lane, patch_depth * self.face.patch_m.0[lane]);
         }
         let mark = CRACKING_SHARE * largest;
-        let (mut z0, mut d0) = (0.0, 0.0);
-        for (z, d) in depth_m.iter().zip(tension_pa).map(|(z, d)| (z.0[lane], d.0[lane])) {
-            if d >= mark {
-                return z0 + (z - z0) * (mark - d0) / (d - d0);
-            }
-            (z0, d0) = (z, d);
+        match tension_pa.iter().position(|d| d.0[lane] >= mark) {
+            Some(node) if node > 0 => cubic::crossing(tension_pa, lane, node - 1, mark),
+            _ => 0.0,
         }
-        z0
     }
 }

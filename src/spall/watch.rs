@@ -5,17 +5,17 @@
 //! the settings' probability: the rock below becomes the face, heating goes on and it may slab and flake in turn; if it
 //! stays it shields the rock below, and no further slab follows. Its own outer skin can still flake.
 
-use super::flake::{self, FlakeDraws, MEDIAN_RISK};
+use super::flake::{self, FlakeDraws, MEDIAN_RISK, Sites};
 use super::outcome::{Event, Events, Family, Outcome, SLABS_MAX};
-use super::slab::{Drive, Face, SPLIT_FACTOR, SPLIT_RADIUS_MAX_M, StrengthLaw};
+use super::slab::{Drive, Face, FaceOnGrid, SPLIT_FACTOR, SPLIT_RADIUS_MAX_M, StrengthLaw};
 use super::vapour;
 use crate::heat::column::Column;
 use crate::heat::grid::Grid;
 use crate::heat::march::{Account, Moment, Observer, Verdict};
 use crate::heat::material::Material;
+use crate::numerics::cubic;
 use crate::numerics::lanes::{LANES, Lanes};
 use crate::stress::skin::{SkinDraws, SkinLaw, membrane_force_n_m};
-use crate::stress::sphere::Shells;
 use crate::units::ICE_POINT_K;
 
 /// The march may stop once the face is colder than this, K, and the drive below this share of its largest value.
@@ -110,7 +110,8 @@ struct DrawState {
 pub struct Watch<'a> {
     draws: &'a WatchDraws<'a>,
     material: &'a Material<'a>,
-    shells: Shells,
+    face: FaceOnGrid,
+    sites: Sites,
     stress_pa: Vec<Lanes>,
     tension_pa: Vec<Lanes>,
     state: [DrawState; LANES],
@@ -155,7 +156,8 @@ impl<'a> Watch<'a> {
         Watch {
             draws,
             material,
-            shells: Shells::new(&grid.depth_m, draws.face.curvature_per_m),
+            face: FaceOnGrid::new(draws.face, grid),
+            sites: Sites::new(&draws.flake, grid),
             stress_pa: vec![zero; n],
             tension_pa: vec![zero; n],
             state,
@@ -249,9 +251,9 @@ impl<'a> Watch<'a> {
             self.state[lane].depth_m = 0.0;
             return None;
         }
-        let depth =
-            self.draws.face.cracking_depth_m(lane, drive, &column.grid.depth_m, &self.tension_pa, slab.patch_depth);
-        let hottest = at_depth(column, &column.hottest_k, lane, depth);
+        let index = self.face.cracking_index(lane, drive, &column.grid, &self.tension_pa, slab.patch_depth);
+        let depth = column.grid.depth_at(lane, index);
+        let hottest = cubic::at_within(&column.hottest_k, lane, index);
         let margin = largest - self.strength_pa(lane, hottest);
         let surface_k = column.temperature_k[0].0[lane];
         let state = &mut self.state[lane];
@@ -303,23 +305,24 @@ impl<'a> Watch<'a> {
 
     fn see_rind(&mut self, lane: usize, column: &Column, moment: &Moment) {
         let Some(rind) = self.draws.rind.as_ref().map(|r| r[lane]) else { return };
-        let depth = &column.grid.depth_m;
-        let mut force = 0.0;
-        let mut tension = 0.0;
-        for i in 0..depth.len() - 1 {
-            let (z0, z1) = (depth[i].0[lane], depth[i + 1].0[lane]);
-            if z0 >= rind.depth_m {
-                break;
-            }
-            let share = ((rind.depth_m - z0) / (z1 - z0)).min(1.0);
-            let (s0, s1) = (self.stress_pa[i].0[lane], self.stress_pa[i + 1].0[lane]);
-            force += (s0 + 0.5 * share * (s1 - s0)) * share * (z1 - z0);
-            let (d0, d1) = (self.tension_pa[i].0[lane], self.tension_pa[i + 1].0[lane]);
-            tension = d0 + share * (d1 - d0);
-        }
+        let grid = &column.grid;
+        let index = grid.index_at(lane, rind.depth_m);
+        // Mean compression of the rind, by Simpson's rule in the index.
+        let steps = 2 * (index as usize + 1);
+        let part = index / steps as f64;
+        let force: f64 = (0..=steps)
+            .map(|j| {
+                let here = part * j as f64;
+                let weight = if j == 0 || j == steps { 1.0 } else { [2.0, 4.0][j % 2] };
+                let per_index = cubic::at(&grid.depth_per_index_m, lane, here);
+                weight * part / 3.0 * per_index * cubic::at(&self.stress_pa, lane, here)
+            })
+            .sum();
+        let tension = cubic::at_within(&self.tension_pa, lane, index);
         let face = &self.draws.face;
         let patch = self.last.0.0[lane] * face.plan.tension_per_force(face.patch_m.0[lane], rind.depth_m);
-        let plane = rind.plane_share * self.strength_pa(lane, at_depth(column, &column.hottest_k, lane, rind.depth_m));
+        let hottest = cubic::at_within(&column.hottest_k, lane, index);
+        let plane = rind.plane_share * self.strength_pa(lane, hottest);
         if force / rind.depth_m >= rind.buckling_pa || tension.max(patch) >= plane {
             self.state[lane].rind_gone = true;
             self.outcome[lane].events.push(Event {
@@ -356,33 +359,17 @@ fn between_powers(start: f64, end: f64, share: f64) -> f64 {
     if start > 0.0 { start * libm::pow(end / start, share) } else { end }
 }
 
-/// Value of a nodal array at a depth of one lane.
-fn at_depth(column: &Column, array: &[Lanes], lane: usize, depth_m: f64) -> f64 {
-    let depth = &column.grid.depth_m;
-    for i in 1..depth.len() {
-        let (z0, z1) = (depth[i - 1].0[lane], depth[i].0[lane]);
-        if z1 >= depth_m {
-            let share = ((depth_m - z0) / (z1 - z0)).clamp(0.0, 1.0);
-            return array[i - 1].0[lane] + share * (array[i].0[lane] - array[i - 1].0[lane]);
-        }
-    }
-    array[array.len() - 1].0[lane]
-}
-
 impl Observer for Watch<'_> {
     #[inline(always)]
     fn see(&mut self, column: &mut Column, moment: &Moment) -> Verdict {
-        let depth_m = &column.grid.depth_m;
+        let grid = &column.grid;
         let (largest, active) =
             self.draws.skin_law.stress(&self.draws.skin, &column.temperature_k, &column.hottest_k, &mut self.stress_pa);
-        // Up to and with the first node without stress.
-        let reach = (active + 1).min(depth_m.len());
-        let force = membrane_force_n_m(&depth_m[..reach], &self.stress_pa[..reach]);
-        let face = &self.draws.face;
-        let mut drive = face.drive(&self.shells, depth_m, &self.stress_pa, reach, force, &mut self.tension_pa);
+        let force = membrane_force_n_m(grid, &self.stress_pa, active);
+        let mut drive = self.face.drive(grid, &self.stress_pa, active, force, &mut self.tension_pa);
         self.add_vapour(column, moment, &mut drive);
         self.last = (force, drive);
-        let (risk, flake_depth) = flake::risk(&self.draws.flake, depth_m, &self.stress_pa, largest);
+        let (risk, flake_depth) = self.sites.risk(&self.draws.flake, &grid.depth_m, &self.stress_pa, largest);
         let mut stripped = false;
         let mut enough = true;
         for l in 0..LANES {

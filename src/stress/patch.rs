@@ -10,6 +10,9 @@
 //! disc:   D = (1/a) integral s(c) { -[(1+(z-c)^2)^-3/2 - (1+(z+c)^2)^-3/2]/2 + 3 z (z+c) (1+(z+c)^2)^-5/2 } dc
 //! strip:  D = (1/(pi a)) integral s(c) { -1/(1+(z-c)^2) + 1/(1+(z+c)^2) + 4 z (z+c)/(1+(z+c)^2)^2 } dc
 
+use crate::heat::grid::Grid;
+use crate::numerics::lanes::Lanes;
+
 /// Plan of a heated patch.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Plan {
@@ -71,28 +74,40 @@ impl Plan {
             }
         }
     }
+}
 
-    /// Largest tension below a skin, Pa, within `within_m` of the face. `skin` gives `(depth m, compression Pa)`, face
-    /// first. The peak moves deeper as the skin thickens, so a few depths are tried; between them it errs by under 2 %.
-    pub fn largest_tension_pa(
-        self,
-        half_width_m: f64,
-        within_m: f64,
-        skin: impl Iterator<Item = (f64, f64)> + Clone,
-    ) -> f64 {
-        const TRIED: [f64; 6] = [0.6, 0.8, 1.0, 1.25, 1.6, 2.1];
-        let at = |z_m: f64| {
-            let mut sum = 0.0;
-            let mut before: Option<(f64, f64)> = None;
-            for (c, s) in skin.clone() {
-                let value = s * self.sheet_tension(half_width_m, z_m, c);
-                if let Some((c0, value0)) = before {
-                    sum += 0.5 * (c - c0) * (value + value0);
-                }
-                before = Some((c, value));
-            }
-            sum
+/// Depths over the half-width at which the stack of sheets is asked. The peak moves deeper as the skin thickens; between
+/// them it errs by under 2 %.
+const TRIED: [f64; 6] = [0.6, 0.8, 1.0, 1.25, 1.6, 2.1];
+
+/// What the sheets of a grid add at the depths that are tried.
+#[derive(Debug, Clone)]
+pub struct Stack {
+    /// Tension at each tried depth for a unit stress at each node, `[n]`.
+    per_stress: Vec<[Lanes; TRIED.len()]>,
+}
+
+impl Stack {
+    /// A stack on a grid `[n]` under patches of `half_width_m`, asked within `within_m` of the face.
+    pub fn new(plan: Plan, half_width_m: Lanes, within_m: Lanes, grid: &Grid) -> Stack {
+        let sheet = |i: usize, tried: f64| {
+            Lanes::from_fn(|l| {
+                let (a, c) = (half_width_m.0[l], grid.depth_m[i].0[l]);
+                plan.sheet_tension(a, (tried * a).min(within_m.0[l]), c)
+            }) * grid.weight_m(i)
         };
-        TRIED.iter().map(|t| (t * half_width_m).min(within_m)).map(at).fold(0.0, f64::max)
+        Stack { per_stress: (0..grid.len()).map(|i| TRIED.map(|t| sheet(i, t))).collect() }
+    }
+
+    /// Largest tension below a skin, Pa. `stress_pa` is `[n]` and zero from node `active` on.
+    #[inline(always)]
+    pub fn largest_tension_pa(&self, stress_pa: &[Lanes], active: usize) -> Lanes {
+        let mut sums = [Lanes::ZERO; TRIED.len()];
+        for (stress, per_stress) in stress_pa.iter().zip(&self.per_stress).take(active) {
+            for (sum, per_stress) in sums.iter_mut().zip(per_stress) {
+                *sum += *stress * *per_stress;
+            }
+        }
+        sums.into_iter().fold(Lanes::ZERO, Lanes::max)
     }
 }

@@ -8,6 +8,7 @@
 //! with Tmax the hottest temperature that the rock at that depth has seen. Elastic: no creep, no micro-cracking beyond R.
 //! For constant properties N = E alpha H / ((1 - nu) rho c) with H the absorbed heat: force follows dose.
 
+use crate::heat::grid::Grid;
 use crate::numerics::lanes::Lanes;
 use crate::numerics::table::{UniformPair, UniformTable};
 
@@ -78,12 +79,12 @@ pub struct SkinDraws {
     pub residual_branch: Lanes,
 }
 
-/// Membrane force of a profile, N/m: trapezoids over depth. `stress_pa` and `depth_m` are `[n]`.
+/// Membrane force of a profile, N/m. `stress_pa` is `[n]` and zero from node `active` on.
 #[inline(always)]
-pub fn membrane_force_n_m(depth_m: &[Lanes], stress_pa: &[Lanes]) -> Lanes {
+pub fn membrane_force_n_m(grid: &Grid, stress_pa: &[Lanes], active: usize) -> Lanes {
     let mut force = Lanes::ZERO;
-    for i in 0..depth_m.len() - 1 {
-        force += (stress_pa[i] + stress_pa[i + 1]) * (depth_m[i + 1] - depth_m[i]) * 0.5;
+    for i in 0..active {
+        force += stress_pa[i] * grid.weight_m(i);
     }
     force
 }

@@ -11,6 +11,7 @@
 //!
 //! Checked for d/R .01 to .14 and f .15 to 1; see `docs/validation.md` for where it fails.
 
+use crate::heat::grid::Grid;
 use crate::numerics::lanes::Lanes;
 
 /// Range in which the cap factor was checked: skin depth over radius, and heated share.
@@ -23,20 +24,26 @@ pub const CAP_FACTOR_SHARE: std::ops::RangeInclusive<f64> = 0.15..=1.0;
 pub struct Shells {
     /// 2/R, 1/m.
     two_over_radius: Lanes,
-    /// p^2, zero beyond the centre, `[n]`.
-    squared: Vec<Lanes>,
+    /// p^2 dz/di, zero beyond the centre, `[n]`.
+    squared_m: Vec<Lanes>,
     /// 1/p^3, `[n]`.
     inverse_cubed: Vec<Lanes>,
 }
 
 impl Shells {
-    /// Powers at `depth_m` `[n]` for eight spheres of curvature 1/R; 0 is a flat face.
-    pub fn new(depth_m: &[Lanes], curvature_per_m: Lanes) -> Shells {
+    /// Powers on a grid `[n]` for eight spheres of curvature 1/R; 0 is a flat face.
+    pub fn new(grid: &Grid, curvature_per_m: Lanes) -> Shells {
         let p = |z: &Lanes, least: f64| (Lanes::ONE - *z * curvature_per_m).max(Lanes::splat(least));
         Shells {
             two_over_radius: curvature_per_m * 2.0,
-            squared: depth_m.iter().map(|z| p(z, 0.0) * p(z, 0.0)).collect(),
-            inverse_cubed: depth_m
+            squared_m: grid
+                .depth_m
+                .iter()
+                .zip(&grid.depth_per_index_m)
+                .map(|(z, per_index)| p(z, 0.0) * p(z, 0.0) * *per_index)
+                .collect(),
+            inverse_cubed: grid
+                .depth_m
                 .iter()
                 .map(|z| {
                     let p = p(z, 1e-3);
@@ -47,39 +54,43 @@ impl Shells {
     }
 
     /// Normal tension at every node, `[n]`, into `tension_pa`; zero on a flat face. Stress is zero from node `active` on.
+    ///
+    /// J is summed cell by cell from cubics in the index: (13 (y_i + y_{i+1}) - y_{i-1} - y_{i+2})/24.
     #[inline(always)]
-    pub fn normal_tension(&self, depth_m: &[Lanes], stress_pa: &[Lanes], active: usize, tension_pa: &mut [Lanes]) {
-        let n = depth_m.len();
-        let active = active.min(n);
-        let mut cumulative = Lanes::ZERO;
-        let mut above = stress_pa[0] * self.squared[0];
+    pub fn normal_tension(&self, stress_pa: &[Lanes], active: usize, tension_pa: &mut [Lanes]) {
+        let n = stress_pa.len();
+        let y = |i: usize| if i < n { stress_pa[i] * self.squared_m[i] } else { Lanes::ZERO };
+        let reach = (active + 2).min(n);
+        let (mut here, mut next) = (y(0), y(1));
+        // A parabola carries the profile beyond the face.
+        let mut before = (here - next) * 3.0 + y(2);
+        let mut whole = Lanes::ZERO;
         tension_pa[0] = Lanes::ZERO;
-        for i in 1..active {
-            let here = stress_pa[i] * self.squared[i];
-            cumulative += (above + here) * (depth_m[i] - depth_m[i - 1]) * 0.5;
-            tension_pa[i] = cumulative;
-            above = here;
+        for i in 1..reach {
+            let after = y(i + 1);
+            whole += ((here + next) * 13.0 - before - after) * (1.0 / 24.0);
+            tension_pa[i] = whole;
+            (before, here, next) = (here, next, after);
         }
-        if active < n {
-            cumulative += above * (depth_m[active] - depth_m[active - 1]) * 0.5;
-        }
-        let whole = cumulative;
-        for i in 1..active {
+        for i in 1..reach {
             tension_pa[i] = self.two_over_radius * ((tension_pa[i] - whole) * self.inverse_cubed[i] + whole);
         }
-        tension_pa[active..].fill(self.two_over_radius * whole);
+        tension_pa[reach..].fill(self.two_over_radius * whole);
     }
 }
 
 /// Factor c for a cap.
 ///
 /// ```
-/// use spallcast::stress::sphere::cap_factor;
-/// assert_eq!(cap_factor(1.0, 0.05), 1.0);
-/// assert!((cap_factor(0.3, 0.05) - (1.0 - 0.34 * 0.7 * (1.0 - (-0.05f64 / 0.037).exp()))).abs() < 1e-14);
+/// use spallcast::{numerics::lanes::Lanes, stress::sphere::cap_factor};
+/// let factor = |f: f64, d: f64| cap_factor(Lanes::splat(f), Lanes::splat(d)).0[0];
+/// assert_eq!(factor(1.0, 0.05), 1.0);
+/// assert!((factor(0.3, 0.05) - (1.0 - 0.34 * 0.7 * (1.0 - (-0.05f64 / 0.037).exp()))).abs() < 1e-14);
 /// ```
-pub fn cap_factor(heated_share: f64, skin_over_radius: f64) -> f64 {
-    1.0 - 0.34 * (1.0 - heated_share) * -libm::expm1(-skin_over_radius / 0.037)
+#[inline(always)]
+pub fn cap_factor(heated_share: Lanes, skin_over_radius: Lanes) -> Lanes {
+    let thin = (skin_over_radius * (-1.0 / 0.037)).exp();
+    Lanes::ONE - (Lanes::ONE - heated_share) * (Lanes::ONE - thin) * 0.34
 }
 
 /// Radius of the circle that bounds a cap of the share `f` of a sphere's surface, over R: 2 sqrt(f (1 - f)), R from a
