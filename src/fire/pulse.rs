@@ -30,16 +30,16 @@ pub const RESIDUAL_GAS_K: f64 = 450.0 + 273.15;
 pub const RESIDUAL_H_W_M2_K: f64 = 10.0;
 
 /// Steps of each leg. `tests/step_plan.rs` shows the error they leave on every class.
-
-
-
-const DECAY_STEPS_MAX: usize = 44;
+const GROWTH_STEPS: usize = 8;
+const PLATEAU_STEPS: usize = 15;
+const RESIDUAL_STEPS: usize = 15;
+const DECAY_STEPS_MAX: usize = 36;
 /// Lead of the plateau's steps as a share of the growth time, and of the residual stage's as a share of the decay time.
-
+const PLATEAU_LEAD_SHARE: f64 = 0.4;
 const RESIDUAL_LEAD_SHARE: f64 = 0.2;
 /// First step of the decay as a share of its time constant, and the growth from step to step.
-
-
+const DECAY_FIRST_SHARE: f64 = 0.035;
+const DECAY_FACTOR: f64 = 1.25;
 
 /// Level of exchange at a plateau, per draw.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -112,19 +112,19 @@ impl SurfaceForcing for Pulse {
 
     fn leg(&self, leg: usize) -> Leg {
         match leg {
-            GROWTH => Leg { start_s: Lanes::ZERO, end_s: self.growth_s, steps: env_u("GROWTH_STEPS",10), spacing: Spacing::Even },
+            GROWTH => Leg { start_s: Lanes::ZERO, end_s: self.growth_s, steps: GROWTH_STEPS, spacing: Spacing::Even },
             PLATEAU => Leg {
                 start_s: self.growth_s,
                 end_s: self.flaming_s,
-                steps: env_u("PLATEAU_STEPS",24),
-                spacing: Spacing::Geometric { lead_s: self.growth_s * env_f("PLATEAU_LEAD_SHARE",0.4) },
+                steps: PLATEAU_STEPS,
+                spacing: Spacing::Geometric { lead_s: self.growth_s * PLATEAU_LEAD_SHARE },
             },
             RESIDUAL => {
                 let none = (0..LANES).all(|l| self.residence_s.0[l] <= self.flaming_s.0[l]);
                 Leg {
                     start_s: self.flaming_s,
                     end_s: self.residence_s,
-                    steps: if none { 0 } else { env_u("RESIDUAL_STEPS",20) },
+                    steps: if none { 0 } else { RESIDUAL_STEPS },
                     spacing: Spacing::Geometric { lead_s: self.decay_s * RESIDUAL_LEAD_SHARE },
                 }
             }
@@ -132,7 +132,7 @@ impl SurfaceForcing for Pulse {
                 start_s: self.residence_s,
                 end_s: self.residence_s,
                 steps: DECAY_STEPS_MAX,
-                spacing: Spacing::Growing { first_s: self.decay_s * env_f("DECAY_FIRST_SHARE",0.04), factor: env_f("DECAY_FACTOR",1.18) },
+                spacing: Spacing::Growing { first_s: self.decay_s * DECAY_FIRST_SHARE, factor: DECAY_FACTOR },
             },
         }
     }
@@ -228,6 +228,3 @@ impl SurfaceForcing for Series {
         }
     }
 }
-
-fn env_u(n: &str, d: usize) -> usize { std::env::var(n).map(|v| v.parse().unwrap()).unwrap_or(d) }
-fn env_f(n: &str, d: f64) -> f64 { std::env::var(n).map(|v| v.parse().unwrap()).unwrap_or(d) }

@@ -18,9 +18,13 @@ use crate::numerics::lanes::{LANES, Lanes};
 use crate::stress::skin::{SkinDraws, SkinLaw, membrane_force_n_m};
 use crate::units::ICE_POINT_K;
 
-/// The march may stop once the face is colder than this, K, and the drive below this share of its largest value.
-const COLD_FACE_K: f64 = 100.0 + ICE_POINT_K;
+/// A march whose fire is over may stop once no draw can spall any more; `tests/step_plan.rs` shows that none does. Once
+/// the face gives heat off, stress at the face and force fall, and no rock gets hotter than the face has been. A drive
+/// below this share of the strength of rock as hot as that comes to nothing.
+const HARMLESS: f64 = 0.95;
+/// So does any drive that has fallen below this share of its largest value under a face colder than this, K.
 const PAST_PEAK: f64 = 0.95;
+const COLD_FACE_K: f64 = 100.0 + ICE_POINT_K;
 /// A drive below this share of the strength of the face is not followed closely.
 const FAR_BELOW: f64 = 0.6;
 
@@ -287,12 +291,36 @@ impl<'a> Watch<'a> {
         leaves.then_some(thickness)
     }
 
+    /// Whether nothing more can happen to a draw once the fire is over.
+    fn is_over(&self, lane: usize, column: &Column, moment: &Moment, drive: &Drive, force_n_m: f64) -> bool {
+        let state = &self.state[lane];
+        let largest = drive.largest_pa.0[lane];
+        if state.surface_k < COLD_FACE_K && largest < PAST_PEAK * state.peak_drive_pa {
+            return true;
+        }
+        if moment.flux_w_m2.0[lane] >= 0.0 || !state.rind_gone || self.draws.wet.is_some() {
+            return false;
+        }
+        let harmless = HARMLESS * self.strength_pa(lane, column.hottest_k[0].0[lane]);
+        let splits = !state.split && self.section_average_pa(lane, force_n_m) >= SPLIT_FACTOR * harmless;
+        !splits && (state.done || largest < harmless)
+    }
+
+    /// Section average that splits a boulder, Pa; 0 where it is too large to split or a flat face.
+    fn section_average_pa(&self, lane: usize, force_n_m: f64) -> f64 {
+        match self.draws.slab[lane].radius_m {
+            Some(radius) if radius < SPLIT_RADIUS_MAX_M => {
+                2.0 * self.draws.face.heated_share.0[lane] * force_n_m / radius
+            }
+            _ => 0.0,
+        }
+    }
+
     fn see_split(&mut self, lane: usize, column: &Column, moment: &Moment, force_n_m: f64) {
-        let slab = self.draws.slab[lane];
-        let Some(radius) = slab.radius_m.filter(|r| *r < SPLIT_RADIUS_MAX_M) else { return };
-        let average = 2.0 * self.draws.face.heated_share.0[lane] * force_n_m / radius;
+        let Some(radius) = self.draws.slab[lane].radius_m else { return };
+        let average = self.section_average_pa(lane, force_n_m);
         let core_k = column.hottest_k[column.hottest_k.len() - 1].0[lane];
-        if average >= SPLIT_FACTOR * self.strength_pa(lane, core_k) {
+        if average > 0.0 && average >= SPLIT_FACTOR * self.strength_pa(lane, core_k) {
             self.state[lane].split = true;
             self.outcome[lane].events.push(Event {
                 family: Family::Split,
@@ -399,7 +427,7 @@ impl Observer for Watch<'_> {
             let state = &mut self.state[l];
             state.surface_k = column.temperature_k[0].0[l];
             state.peak_drive_pa = state.peak_drive_pa.max(drive.largest_pa.0[l]);
-            enough &= surface_k < COLD_FACE_K && drive.largest_pa.0[l] < PAST_PEAK * state.peak_drive_pa;
+            enough &= self.is_over(l, column, moment, &drive, force.0[l]);
         }
         if enough && !stripped { Verdict::Enough } else { Verdict::Continue }
     }
