@@ -71,14 +71,15 @@ fn convection_error(nodes: usize, steps: usize) -> f64 {
 }
 
 #[test]
-fn observed_order_in_time_and_space_is_two() {
+fn observed_order_is_two_in_time_and_three_in_space() {
     // Time: differences between successive halvings on one fine grid, so that the grid's error cancels.
     let e: Vec<f64> = [40, 80, 160].iter().map(|s| convection_error(400, *s)).collect();
     let order = ((e[0] - e[1]) / (e[1] - e[2])).log2();
     println!("time {e:?} order {order}");
     assert!((1.8..2.3).contains(&order), "order in time {order}");
+    // Space: fourth inside, third from the face cell on; here the face leads.
     let e: Vec<f64> = [21, 41, 81].iter().map(|n| convection_error(*n, 3000)).collect();
     let order = ((e[0] - e[1]) / (e[1] - e[2])).log2();
     println!("space {e:?} order {order}");
-    assert!((1.8..2.2).contains(&order), "order in space {order}");
+    assert!((2.8..4.2).contains(&order), "order in space {order}");
 }

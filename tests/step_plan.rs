@@ -28,7 +28,7 @@ const FINE: Resolution = Resolution { nodes: 300, stretch: 7.0, lengths: 7.0, re
 const PEAK: f64 = 0.0022;
 /// Largest error of the face at any step of a class history, share of the peak rise. Above 0.2 % only in the few steps
 /// after a joint of the pulse.
-const AT_STEP: f64 = 0.003;
+const AT_STEP: f64 = 0.004;
 /// Largest error while flames fade onto residual burning, share of the peak rise: the face then cools and nothing spalls.
 const FADING: f64 = 0.015;
 /// Times and depths of the first median flake and of the first slab.

@@ -27,6 +27,8 @@ const DRYING_TO_K: f64 = 105.0 + ICE_POINT_K;
 const CURVE_FROM_K: f64 = 200.0;
 const CURVE_TO_K: f64 = 2600.0;
 const CURVE_SEGMENTS: usize = 1024;
+/// Spacing of the knots kept for moist rock, K.
+const KNOT_SPACING_K: f64 = 5.0;
 /// First-heating damage: share of conductivity lost at most, and the peak temperatures between which it grows.
 const DAMAGE_MAX: f64 = 0.25;
 const DAMAGE_FROM_K: f64 = 100.0 + ICE_POINT_K;
@@ -61,7 +63,7 @@ impl HeatCurve {
         }
         let (from, to) = (knots[0].0, knots[knots.len() - 1].0);
         let table = UniformTable::new(from, to, CURVE_SEGMENTS, |v| interpolate(&knots, v));
-        let knots = knots.into_iter().step_by(10).collect();
+        let knots = knots.into_iter().step_by((KNOT_SPACING_K / STEP_K) as usize).collect();
         HeatCurve { table, knots }
     }
 
@@ -73,11 +75,15 @@ impl HeatCurve {
     /// Equivalent temperature of a temperature, K.
     pub fn content(&self, t_k: f64) -> f64 {
         // Invert the table itself, so that content and temperature agree to rounding.
-        let mut v =
-            self.knots.iter().min_by(|a, b| (a.1 - t_k).abs().total_cmp(&(b.1 - t_k).abs())).map_or(t_k, |k| k.0);
+        let knot = ((t_k - CURVE_FROM_K) / KNOT_SPACING_K).round().clamp(0.0, (self.knots.len() - 1) as f64);
+        let mut v = self.knots[knot as usize].0;
         for _ in 0..8 {
             let (t, slope) = self.table.at(v);
-            v -= (t - t_k) / slope;
+            let next = v - (t - t_k) / slope;
+            if next == v {
+                break;
+            }
+            v = next;
         }
         v
     }
@@ -210,6 +216,7 @@ impl Material<'_> {
     }
 
     /// Factor on the conductivity of rock at `t_k` whose hottest moment was `hottest_k`.
+    #[inline(always)]
     pub fn conductivity_factor(&self, t_k: Lanes, hottest_k: Lanes) -> Lanes {
         let mut factor = Lanes::ONE;
         if self.first_heating_damage {

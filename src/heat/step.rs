@@ -27,11 +27,8 @@ use crate::numerics::lanes::Lanes;
 /// y = 1 - 1/sqrt 2.
 const GAMMA: f64 = 1.0 - core::f64::consts::FRAC_1_SQRT_2;
 
-/// Largest change of the face within a stage up to which its radiation is followed exactly, K.
+/// Largest change of a node within a stage up to which radiation and resistivity are followed exactly, K.
 const STAGE_CHANGE_K: f64 = 150.0;
-/// Range in which the resistivity of an inner stage is taken, K.
-const COLDEST_K: f64 = 200.0;
-const HOTTEST_K: f64 = 2000.0;
 
 /// Work arrays of the step, reused from step to step; all `[n]`, one entry a node.
 #[derive(Debug, Clone)]
@@ -58,6 +55,23 @@ struct Node {
     resistivity: Lanes,
     /// Factor on the conductivity from history.
     factor: Lanes,
+}
+
+impl Node {
+    #[inline(always)]
+    fn at<const REMEMBERS: bool>(
+        material: &Material,
+        temperature_k: &[Lanes],
+        slope: &[Lanes],
+        history: &[Lanes],
+        i: usize,
+    ) -> Node {
+        Node {
+            temperature_k: temperature_k[i],
+            resistivity: material.resistivity(temperature_k[i], slope[i]),
+            factor: if REMEMBERS { history[i] } else { Lanes::ONE },
+        }
+    }
 }
 
 impl Stepper {
@@ -118,21 +132,16 @@ impl Stepper {
         let last = n - 1;
 
         // First stage, and elimination from the deep end to the face.
-        let node = |i: usize| Node {
-            temperature_k: temperature[i],
-            resistivity: material.resistivity(temperature[i], slope[i]),
-            factor: if REMEMBERS { history[i] } else { Lanes::ONE },
-        };
         let flux_now = now.flux_into(temperature[0]);
         let flux_drift = (then.flux_into(temperature[0]) - flux_now) * GAMMA;
         let face_link = gdt * now.stiffness_w_m2_k(temperature[0]);
-        let mut lower = node(last);
+        let mut lower = Node::at::<REMEMBERS>(material, temperature, slope, history, last);
         let (mut flow_below, mut link_below) = (Lanes::ZERO, Lanes::ZERO);
         for i in (0..n).rev() {
             let (mut flow, mut link) = (flux_now + flux_drift, face_link);
             let mut upper = lower;
             if i > 0 {
-                upper = node(i - 1);
+                upper = Node::at::<REMEMBERS>(material, temperature, slope, history, i - 1);
                 let g = conductance::<REMEMBERS>(spread[i - 1], &upper, &lower);
                 flow = g * (upper.temperature_k - lower.temperature_k);
                 link = gdt * g;
@@ -160,7 +169,7 @@ impl Stepper {
                 k1[i] = alone[i] + follow[i] * k1[i - 1];
             }
             let (t, s) = material.temperature(content[i] + dt_s * k1[i], hottest[i]);
-            let near = t.max(Lanes::splat(COLDEST_K)).min(Lanes::splat(HOTTEST_K));
+            let near = within_a_stage(temperature[i], t);
             stage[i] = Node {
                 temperature_k: t,
                 resistivity: material.resistivity(near, s),
@@ -222,14 +231,20 @@ fn conductance<const REMEMBERS: bool>(area_over_distance: Lanes, a: &Node, b: &N
     spread * reciprocal * (y * y * (2.0 / 3.0) + 2.0)
 }
 
-/// Flux into a face at `stage_k`, from `start_k` at the start of the step.
+/// `stage_k`, or as near to it as [`STAGE_CHANGE_K`] from `start_k` allows.
 ///
-/// A face whose exchange has just jumped overshoots in the inner stage of a long step by up to 1/y - 1 times the whole
-/// change. The linear part of that cancels in the result; the curvature of T^4 would not, so it is taken at most
-/// [`STAGE_CHANGE_K`] away. Ordinary steps change less and are not touched.
+/// Where the exchange has just jumped, the inner stage of a long step overshoots by up to 1/y - 1 times the whole change.
+/// The linear part of that cancels in the result. What is not linear would not: T^4 at the face, and a resistivity so far
+/// from the one of the matrix that the method were no longer stable. Ordinary steps change less and are not touched.
+#[inline(always)]
+fn within_a_stage(start_k: Lanes, stage_k: Lanes) -> Lanes {
+    let limit = Lanes::splat(STAGE_CHANGE_K);
+    stage_k.min(start_k + limit).max(start_k - limit)
+}
+
+/// Flux into a face at `stage_k`, from `start_k` at the start of the step.
 #[inline(always)]
 fn stage_flux(then: &Exchange, start_k: Lanes, stage_k: Lanes) -> Lanes {
-    let limit = Lanes::splat(STAGE_CHANGE_K);
-    let near = stage_k.min(start_k + limit).max(start_k - limit);
+    let near = within_a_stage(start_k, stage_k);
     then.flux_into(near) - then.stiffness_w_m2_k(near) * (stage_k - near)
 }

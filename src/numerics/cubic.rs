@@ -37,13 +37,21 @@ pub fn at_within(array: &[Lanes], lane: usize, index: f64) -> f64 {
 
 /// Index between `from` and `from + 1` at which one lane of `array` reaches `mark`, which it does between these nodes.
 pub fn crossing(array: &[Lanes], lane: usize, from: usize, mark: f64) -> f64 {
-    const HALVINGS: usize = 16;
-    let (mut low, mut high) = (from as f64, from as f64 + 1.0);
-    for _ in 0..HALVINGS {
-        let middle = 0.5 * (low + high);
-        if at(array, lane, middle) < mark { low = middle } else { high = middle }
+    const STEPS: usize = 4;
+    let first = from.max(1).min(array.len() - 3) - 1;
+    let y: [f64; 4] = std::array::from_fn(|j| array[first + j].0[lane] - mark);
+    let (d1, d2, d3) =
+        (y[1] - y[0], (y[2] - 2.0 * y[1] + y[0]) / 2.0, (y[3] - 3.0 * y[2] + 3.0 * y[1] - y[0]) / 6.0);
+    let low = (from - first) as f64;
+    let (below, above) = (array[from].0[lane] - mark, array[from + 1].0[lane] - mark);
+    // Newton's steps from the straight line, kept between the nodes.
+    let mut v = low + below / (below - above);
+    for _ in 0..STEPS {
+        let value = y[0] + v * (d1 + (v - 1.0) * (d2 + (v - 2.0) * d3));
+        let slope = d1 + d2 * (2.0 * v - 1.0) + d3 * (3.0 * v * v - 6.0 * v + 2.0);
+        v = if slope != 0.0 { (v - value / slope).clamp(low, low + 1.0) } else { v };
     }
-    0.5 * (low + high)
+    first as f64 + v
 }
 
 #[cfg(test)]

@@ -1,5 +1,6 @@
 //! Piecewise-linear functions: sorted knots for the catalogue's laws, uniform knots for the march.
 
+use super::gather;
 use super::lanes::Lanes;
 
 /// Value at `x` of the piecewise-linear function through `knots` (x ascending); both end segments are extended.
@@ -58,61 +59,9 @@ impl UniformTable {
     /// Value and slope in each lane.
     #[inline(always)]
     pub fn at_lanes(&self, x: Lanes) -> (Lanes, Lanes) {
-        let mut intercept = Lanes::ZERO;
-        let mut slope = Lanes::ZERO;
-        for l in 0..super::lanes::LANES {
-            let place = ((x.0[l] - self.start) * self.per_unit).clamp(0.0, self.last);
-            let [i, s] = self.segments[place as usize];
-            intercept.0[l] = i;
-            slope.0[l] = s;
-        }
+        let place = (x - Lanes::splat(self.start)) * self.per_unit;
+        let (intercept, slope) = gather::pairs(&self.segments, place);
         (intercept + slope * x, slope)
-    }
-}
-
-/// Two functions tabulated at the same uniform spacing, so that where both are wanted at one place it is found once.
-#[derive(Debug, Clone, PartialEq)]
-pub struct UniformPair {
-    start: f64,
-    per_unit: f64,
-    last: f64,
-    /// `(intercept, slope)` of the first function's segment, then of the second's.
-    segments: Vec<[f64; 4]>,
-}
-
-impl UniformPair {
-    /// Joins two tables.
-    ///
-    /// # Panics
-    /// When they do not have the same knots.
-    pub fn of(first: &UniformTable, second: &UniformTable) -> UniformPair {
-        let same = first.start == second.start && first.per_unit == second.per_unit && first.last == second.last;
-        assert!(same, "a pair of tables has common knots");
-        let join = |(a, b): (&[f64; 2], &[f64; 2])| [a[0], a[1], b[0], b[1]];
-        UniformPair {
-            start: first.start,
-            per_unit: first.per_unit,
-            last: first.last,
-            segments: first.segments.iter().zip(&second.segments).map(join).collect(),
-        }
-    }
-
-    /// The first function at `x` and the second at `y`, in each lane.
-    #[inline(always)]
-    pub fn at_lanes(&self, x: Lanes, y: Lanes) -> (Lanes, Lanes) {
-        let place = |v: f64| ((v - self.start) * self.per_unit).clamp(0.0, self.last) as usize;
-        let (mut a0, mut a1, mut b0, mut b1) = (Lanes::ZERO, Lanes::ZERO, Lanes::ZERO, Lanes::ZERO);
-        if x == y {
-            for l in 0..super::lanes::LANES {
-                [a0.0[l], a1.0[l], b0.0[l], b1.0[l]] = self.segments[place(x.0[l])];
-            }
-        } else {
-            for l in 0..super::lanes::LANES {
-                [a0.0[l], a1.0[l], _, _] = self.segments[place(x.0[l])];
-                [_, _, b0.0[l], b1.0[l]] = self.segments[place(y.0[l])];
-            }
-        }
-        (a0 + a1 * x, b0 + b1 * y)
     }
 }
 

@@ -15,7 +15,7 @@ use crate::heat::march::{Account, Moment, Observer, Verdict};
 use crate::heat::material::Material;
 use crate::numerics::cubic;
 use crate::numerics::lanes::{LANES, Lanes};
-use crate::stress::skin::{SkinDraws, SkinLaw, membrane_force_n_m};
+use crate::stress::skin::{Skin, SkinDraws, SkinLaw, membrane_force_n_m};
 use crate::units::ICE_POINT_K;
 
 /// A march whose fire is over may stop once no draw can spall any more; `tests/step_plan.rs` shows that none does. Once
@@ -26,7 +26,7 @@ const HARMLESS: f64 = 0.95;
 const PAST_PEAK: f64 = 0.95;
 const COLD_FACE_K: f64 = 100.0 + ICE_POINT_K;
 /// A drive below this share of the strength of the face is not followed closely.
-const FAR_BELOW: f64 = 0.6;
+const FAR_BELOW: f64 = 0.7;
 
 /// What one draw is held against in tension.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -92,8 +92,9 @@ pub struct WatchDraws<'a> {
 struct DrawState {
     /// Drive less strength at the previous step, Pa.
     margin_pa: f64,
-    /// Slab depth and face temperature at the previous step.
+    /// Slab depth when it was last looked at, its index in the grid, and face temperature at the previous step.
     depth_m: f64,
+    index: f64,
     surface_k: f64,
     risk: f64,
     risk_s: f64,
@@ -116,7 +117,7 @@ pub struct Watch<'a> {
     material: &'a Material<'a>,
     face: FaceOnGrid,
     sites: Sites,
-    stress_pa: Vec<Lanes>,
+    skin: Skin,
     tension_pa: Vec<Lanes>,
     state: [DrawState; LANES],
     outcome: [Outcome; LANES],
@@ -131,6 +132,7 @@ impl<'a> Watch<'a> {
         let state = std::array::from_fn(|l| DrawState {
             margin_pa: -draws.slab[l].strength_pa,
             depth_m: 0.0,
+            index: 0.0,
             surface_k: 0.0,
             risk: 0.0,
             risk_s: 0.0,
@@ -162,7 +164,7 @@ impl<'a> Watch<'a> {
             material,
             face: FaceOnGrid::new(draws.face, grid),
             sites: Sites::new(&draws.flake, grid),
-            stress_pa: vec![zero; n],
+            skin: Skin::new(n),
             tension_pa: vec![zero; n],
             state,
             outcome,
@@ -172,7 +174,7 @@ impl<'a> Watch<'a> {
 
     /// Skin stress of every node at the last step, Pa, `[n]`.
     pub fn stress_pa(&self) -> &[Lanes] {
-        &self.stress_pa
+        &self.skin.stress_pa
     }
 
     /// Membrane force and drive at the last step.
@@ -183,6 +185,7 @@ impl<'a> Watch<'a> {
     /// What the draws did; nothing spalls below the floors of exposure.
     pub fn outcomes(mut self, account: &Account) -> [Outcome; LANES] {
         for (l, outcome) in self.outcome.iter_mut().enumerate() {
+            outcome.flaked_sites = -libm::expm1(-self.state[l].risk);
             outcome.fuel_spent = account.fuel_spent.0[l] > 0.0;
             if !outcome.above_floor() {
                 outcome.events = Events::default();
@@ -199,7 +202,6 @@ impl<'a> Watch<'a> {
             return;
         }
         let outcome = &mut self.outcome[lane];
-        outcome.flaked_sites = -libm::expm1(-risk);
         if risk >= MEDIAN_RISK {
             // Under a steady flux the rise, the depth and B are powers of time, so ln B is close to linear in ln t.
             let share =
@@ -255,7 +257,18 @@ impl<'a> Watch<'a> {
             self.state[lane].depth_m = 0.0;
             return None;
         }
+        let known = self.state[lane].index;
+        if known > 0.0 {
+            // The depth where it would crack moves inward: where it was last, rock was hotter and weaker than where it is.
+            let strength = self.strength_pa(lane, cubic::at_within(&column.hottest_k, lane, known));
+            if largest < FAR_BELOW * strength {
+                self.state[lane].margin_pa = largest - strength;
+                self.state[lane].depth_m = 0.0;
+                return None;
+            }
+        }
         let index = self.face.cracking_index(lane, drive, &column.grid, &self.tension_pa, slab.patch_depth);
+        self.state[lane].index = index;
         let depth = column.grid.depth_at(lane, index);
         let hottest = cubic::at_within(&column.hottest_k, lane, index);
         let margin = largest - self.strength_pa(lane, hottest);
@@ -288,6 +301,7 @@ impl<'a> Watch<'a> {
         state.done = !leaves || state.slabs >= self.draws.generations_max.min(SLABS_MAX);
         state.margin_pa = 0.0;
         state.depth_m = 0.0;
+        state.index = 0.0;
         leaves.then_some(thickness)
     }
 
@@ -343,7 +357,7 @@ impl<'a> Watch<'a> {
                 let here = part * j as f64;
                 let weight = if j == 0 || j == steps { 1.0 } else { [2.0, 4.0][j % 2] };
                 let per_index = cubic::at(&grid.depth_per_index_m, lane, here);
-                weight * part / 3.0 * per_index * cubic::at(&self.stress_pa, lane, here)
+                weight * part / 3.0 * per_index * cubic::at(&self.skin.stress_pa, lane, here)
             })
             .sum();
         let tension = cubic::at_within(&self.tension_pa, lane, index);
@@ -391,13 +405,15 @@ impl Observer for Watch<'_> {
     #[inline(always)]
     fn see(&mut self, column: &mut Column, moment: &Moment) -> Verdict {
         let grid = &column.grid;
+        let draws = self.draws;
         let (largest, active) =
-            self.draws.skin_law.stress(&self.draws.skin, &column.temperature_k, &column.hottest_k, &mut self.stress_pa);
-        let force = membrane_force_n_m(grid, &self.stress_pa, active);
-        let mut drive = self.face.drive(grid, &self.stress_pa, active, force, &mut self.tension_pa);
+            self.skin.update(draws.skin_law, &draws.skin, &column.temperature_k, &column.hottest_k);
+        let stress_pa = &self.skin.stress_pa;
+        let force = membrane_force_n_m(grid, stress_pa, active);
+        let mut drive = self.face.drive(grid, stress_pa, active, force, &mut self.tension_pa);
         self.add_vapour(column, moment, &mut drive);
         self.last = (force, drive);
-        let (risk, flake_depth) = self.sites.risk(&self.draws.flake, &grid.depth_m, &self.stress_pa, largest);
+        let (risk, flake_depth) = self.sites.risk(&draws.flake, &grid.depth_m, &self.skin.stress_pa, largest);
         let mut stripped = false;
         let mut enough = true;
         for l in 0..LANES {

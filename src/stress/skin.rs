@@ -10,7 +10,7 @@
 
 use crate::heat::grid::Grid;
 use crate::numerics::lanes::Lanes;
-use crate::numerics::table::{UniformPair, UniformTable};
+use crate::numerics::table::UniformTable;
 
 /// Temperature range of the tables, K; their knots fall on whole tens of Celsius, where the catalogue's do.
 const FROM_K: f64 = 203.15;
@@ -24,42 +24,63 @@ const COLD_RISE_K: f64 = 0.01;
 #[derive(Debug, Clone, PartialEq)]
 pub struct SkinLaw {
     strain_over_expansion_k: UniformTable,
-    both: UniformPair,
+    stiffness_factor: UniformTable,
 }
 
 impl SkinLaw {
     /// Tables of a rock's free strain over its expansion at 20 C (K) and of its residual stiffness over the cold one.
     pub fn new(strain_over_expansion_k: impl Fn(f64) -> f64, stiffness_factor: impl Fn(f64) -> f64) -> SkinLaw {
-        let strain_over_expansion_k = UniformTable::new(FROM_K, TO_K, SEGMENTS, strain_over_expansion_k);
-        let stiffness_factor = UniformTable::new(FROM_K, TO_K, SEGMENTS, stiffness_factor);
-        SkinLaw { both: UniformPair::of(&strain_over_expansion_k, &stiffness_factor), strain_over_expansion_k }
+        SkinLaw {
+            strain_over_expansion_k: UniformTable::new(FROM_K, TO_K, SEGMENTS, strain_over_expansion_k),
+            stiffness_factor: UniformTable::new(FROM_K, TO_K, SEGMENTS, stiffness_factor),
+        }
     }
 
     /// Free strain over the expansion at 20 C, K.
     pub fn strain_over_expansion_k(&self, t_k: f64) -> f64 {
         self.strain_over_expansion_k.at(t_k).0
     }
+}
 
-    /// Stress of every node, `[n]`, into `stress_pa`; returns the largest of each draw and the number of nodes before the
-    /// first that is cold in every draw, from which on the stress is zero.
+/// The skin of eight draws at the nodes of a grid.
+#[derive(Debug, Clone)]
+pub struct Skin {
+    /// Compression, Pa, `[n]`.
+    pub stress_pa: Vec<Lanes>,
+    /// E/E20 of the draw's branch, and the hottest temperature that it was looked up for, `[n]`.
+    stiffness: Vec<(Lanes, Lanes)>,
+}
+
+impl Skin {
+    /// A skin without stress on `n` nodes.
+    pub fn new(n: usize) -> Skin {
+        Skin { stress_pa: vec![Lanes::ZERO; n], stiffness: vec![(Lanes::ONE, Lanes::ZERO); n] }
+    }
+
+    /// Brings the stress of every node in line with its temperature; returns the largest of each draw and the number of
+    /// nodes before the first that is cold in every draw, from which on the stress is zero.
     #[inline(always)]
-    pub fn stress(
-        &self,
+    pub fn update(
+        &mut self,
+        law: &SkinLaw,
         draws: &SkinDraws,
         temperature_k: &[Lanes],
         hottest_k: &[Lanes],
-        stress_pa: &mut [Lanes],
     ) -> (Lanes, usize) {
         let mut largest = Lanes::ZERO;
         for i in 0..temperature_k.len() {
             if i > 0 && (hottest_k[i] - draws.start_k).largest() < COLD_RISE_K {
-                stress_pa[i..].fill(Lanes::ZERO);
+                self.stress_pa[i..].fill(Lanes::ZERO);
                 return (largest, i);
             }
-            let (strain, factor) = self.both.at_lanes(temperature_k[i], hottest_k[i]);
-            let stiffness = Lanes::ONE + draws.residual_branch * (factor - Lanes::ONE);
-            let s = draws.restraint_pa_per_k * (strain - draws.start_strain_k) * stiffness;
-            stress_pa[i] = s;
+            let (stiffness, known_for) = &mut self.stiffness[i];
+            if *known_for != hottest_k[i] {
+                let (factor, _) = law.stiffness_factor.at_lanes(hottest_k[i]);
+                (*stiffness, *known_for) = (Lanes::ONE + draws.residual_branch * (factor - Lanes::ONE), hottest_k[i]);
+            }
+            let (strain, _) = law.strain_over_expansion_k.at_lanes(temperature_k[i]);
+            let s = draws.restraint_pa_per_k * (strain - draws.start_strain_k) * *stiffness;
+            self.stress_pa[i] = s;
             largest = largest.max(s);
         }
         (largest, temperature_k.len())
