@@ -7,11 +7,11 @@
 use std::collections::HashMap;
 use std::sync::{Arc, Mutex, PoisonError};
 
-use super::summary::DrawSummary;
 use super::{Assessment, Model};
+use crate::rockfall::SpallDraw;
 use crate::site::{Boulder, Burn};
 
-/// Draws that are kept in all, about a hundred bytes each.
+/// Draws that are kept in all, 56 bytes each.
 const DRAWS_KEPT: usize = 1 << 20;
 
 /// A solved case.
@@ -19,8 +19,8 @@ const DRAWS_KEPT: usize = 1 << 20;
 pub struct Case {
     /// What is said about the boulder.
     pub assessment: Assessment,
-    /// What every draw did; empty when it was not assessed.
-    pub draws: Vec<DrawSummary>,
+    /// What every draw means for the statics; empty when it was not assessed.
+    pub spalls: Vec<SpallDraw>,
 }
 
 /// Solved cases of a run.
@@ -47,7 +47,7 @@ impl<'a> Cases<'a> {
         }
         // Solved outside the lock: another thread may solve the same case, to the same bits.
         let (assessment, draws) = self.model.assess_with_draws(boulder, burns);
-        let case = Arc::new(Case { assessment, draws });
+        let case = Arc::new(Case { assessment, spalls: self.model.spall_draws(&draws) });
         let mut store = store();
         if store.len() < self.capacity {
             store.insert(key, Arc::clone(&case));
@@ -90,6 +90,6 @@ mod tests {
         let other = cases.solve(&boulder("c", 0.6), &[]);
         assert!(Arc::ptr_eq(&first, &same) && !Arc::ptr_eq(&first, &other));
         let (assessment, draws) = model.assess_with_draws(&boulder("d", 0.5), &[]);
-        assert_eq!((&assessment, &draws), (&same.assessment, &same.draws));
+        assert_eq!((&assessment, &model.spall_draws(&draws)), (&same.assessment, &same.spalls));
     }
 }

@@ -94,7 +94,8 @@ impl<'a> StaticsInputs<'a> {
 }
 
 /// Sums in strands, added up at the end: vector registers then need not wait for one another.
-type Strands = [f64; 4];
+type Strands = [f64; STRANDS];
+const STRANDS: usize = 4;
 
 fn total(strands: &Strands) -> f64 {
     (strands[0] + strands[1]) + (strands[2] + strands[3])
@@ -117,14 +118,20 @@ impl BinTally {
     /// Adds some static draws: `stands`, `moves` and `wet` hold 1 or 0 for each.
     fn count(&mut self, stands: &[f64], moves: &[f64], wet: &[f64]) {
         let mut sums = *self;
-        let groups = stands.chunks(4).zip(moves.chunks(4)).zip(wet.chunks(4));
-        for ((stands, moves), wet) in groups {
-            for (lane, ((stands, moves), wet)) in stands.iter().zip(moves).zip(wet).enumerate() {
-                sums.kept[lane] += stands;
-                sums.kept_wet[lane] += stands * wet;
-                sums.released[lane] += moves;
-                sums.released_wet[lane] += moves * wet;
-            }
+        let mut add = |lane: usize, stands: f64, moves: f64, wet: f64| {
+            sums.kept[lane] += stands;
+            sums.kept_wet[lane] += stands * wet;
+            sums.released[lane] += moves;
+            sums.released_wet[lane] += moves * wet;
+        };
+        let (groups, rest) = stands.as_chunks::<STRANDS>();
+        let (moves, rest_moves) = moves.as_chunks::<STRANDS>();
+        let (wet, rest_wet) = wet.as_chunks::<STRANDS>();
+        for ((stands, moves), wet) in groups.iter().zip(moves).zip(wet) {
+            (0..STRANDS).for_each(|lane| add(lane, stands[lane], moves[lane], wet[lane]));
+        }
+        for (lane, ((stands, moves), wet)) in rest.iter().zip(rest_moves).zip(rest_wet).enumerate() {
+            add(lane, *stands, *moves, *wet);
         }
         *self = sums;
     }
@@ -132,16 +139,22 @@ impl BinTally {
     /// Adds the loose parts of the same draws: `share` is the share of faces that one slides off.
     fn loosen(&mut self, stands: &[f64], moves: &[f64], wet: &[f64], share: &[f64]) {
         let mut sums = *self;
-        let groups = stands.chunks(4).zip(moves.chunks(4)).zip(wet.chunks(4).zip(share.chunks(4)));
-        for ((stands, moves), (wet, share)) in groups {
-            for (lane, ((stands, moves), (wet, share))) in
-                stands.iter().zip(moves).zip(wet.iter().zip(share)).enumerate()
-            {
-                let stays = share * (stands - moves);
-                sums.fragment_moving[lane] += share * moves;
-                sums.fragment_dry[lane] += stays * (1.0 - wet);
-                sums.fragment_wet[lane] += stays * wet;
-            }
+        let mut add = |lane: usize, stands: f64, moves: f64, wet: f64, share: f64| {
+            let stays = share * (stands - moves);
+            sums.fragment_moving[lane] += share * moves;
+            sums.fragment_dry[lane] += stays * (1.0 - wet);
+            sums.fragment_wet[lane] += stays * wet;
+        };
+        let (groups, rest) = stands.as_chunks::<STRANDS>();
+        let (moves, rest_moves) = moves.as_chunks::<STRANDS>();
+        let (wet, rest_wet) = wet.as_chunks::<STRANDS>();
+        let (share, rest_share) = share.as_chunks::<STRANDS>();
+        for ((stands, moves), (wet, share)) in groups.iter().zip(moves).zip(wet.iter().zip(share)) {
+            (0..STRANDS).for_each(|lane| add(lane, stands[lane], moves[lane], wet[lane], share[lane]));
+        }
+        let rest = rest.iter().zip(rest_moves).zip(rest_wet.iter().zip(rest_share));
+        for (lane, ((stands, moves), (wet, share))) in rest.enumerate() {
+            add(lane, *stands, *moves, *wet, *share);
         }
         *self = sums;
     }
