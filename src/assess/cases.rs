@@ -5,7 +5,7 @@
 //! an inventory of distinct boulders of any length runs in the same memory.
 
 use std::collections::HashMap;
-use std::sync::{Arc, Mutex, PoisonError};
+use std::sync::{Arc, Mutex, OnceLock, PoisonError};
 
 use super::{Assessment, Model};
 use crate::rockfall::SpallDraw;
@@ -28,7 +28,7 @@ pub struct Case {
 pub struct Cases<'a> {
     model: &'a Model,
     capacity: usize,
-    solved: Mutex<HashMap<String, Arc<Case>>>,
+    solved: Mutex<HashMap<String, Arc<OnceLock<Arc<Case>>>>>,
 }
 
 impl<'a> Cases<'a> {
@@ -41,18 +41,20 @@ impl<'a> Cases<'a> {
     /// The case of a boulder under the burns that cover it, solved now unless an equal one was before.
     pub fn solve(&self, boulder: &Boulder, burns: &[&Burn]) -> Arc<Case> {
         let key = key(boulder, burns);
-        let store = || self.solved.lock().unwrap_or_else(PoisonError::into_inner);
-        if let Some(case) = store().get(&key) {
-            return Arc::clone(case);
-        }
-        // Solved outside the lock: another thread may solve the same case, to the same bits.
-        let (assessment, draws) = self.model.assess_with_draws(boulder, burns);
-        let case = Arc::new(Case { assessment, spalls: self.model.spall_draws(&draws) });
-        let mut store = store();
-        if store.len() < self.capacity {
-            store.insert(key, Arc::clone(&case));
-        }
-        case
+        let solve = || {
+            let (assessment, draws) = self.model.assess_with_draws(boulder, burns);
+            Arc::new(Case { assessment, spalls: self.model.spall_draws(&draws) })
+        };
+        let place = {
+            let mut store = self.solved.lock().unwrap_or_else(PoisonError::into_inner);
+            match store.get(&key) {
+                Some(place) => Arc::clone(place),
+                None if store.len() < self.capacity => Arc::clone(store.entry(key).or_default()),
+                None => return solve(),
+            }
+        };
+        // Solved outside the lock of the store. A thread that meets a case under way waits for it: solving it too would take as long.
+        Arc::clone(place.get_or_init(solve))
     }
 }
 
