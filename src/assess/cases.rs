@@ -5,13 +5,13 @@
 //! an inventory of distinct boulders of any length runs in the same memory.
 
 use std::collections::HashMap;
-use std::sync::{Arc, Mutex, PoisonError};
+use std::sync::{Arc, Mutex, OnceLock, PoisonError};
 
-use super::summary::DrawSummary;
 use super::{Assessment, Model};
+use crate::rockfall::SpallDraw;
 use crate::site::{Boulder, Burn};
 
-/// Draws that are kept in all, about a hundred bytes each.
+/// Draws that are kept in all, 56 bytes each.
 const DRAWS_KEPT: usize = 1 << 20;
 
 /// A solved case.
@@ -19,8 +19,8 @@ const DRAWS_KEPT: usize = 1 << 20;
 pub struct Case {
     /// What is said about the boulder.
     pub assessment: Assessment,
-    /// What every draw did; empty when it was not assessed.
-    pub draws: Vec<DrawSummary>,
+    /// What every draw means for the statics; empty when it was not assessed.
+    pub spalls: Vec<SpallDraw>,
 }
 
 /// Solved cases of a run.
@@ -28,7 +28,7 @@ pub struct Case {
 pub struct Cases<'a> {
     model: &'a Model,
     capacity: usize,
-    solved: Mutex<HashMap<String, Arc<Case>>>,
+    solved: Mutex<HashMap<String, Arc<OnceLock<Arc<Case>>>>>,
 }
 
 impl<'a> Cases<'a> {
@@ -41,18 +41,20 @@ impl<'a> Cases<'a> {
     /// The case of a boulder under the burns that cover it, solved now unless an equal one was before.
     pub fn solve(&self, boulder: &Boulder, burns: &[&Burn]) -> Arc<Case> {
         let key = key(boulder, burns);
-        let store = || self.solved.lock().unwrap_or_else(PoisonError::into_inner);
-        if let Some(case) = store().get(&key) {
-            return Arc::clone(case);
-        }
-        // Solved outside the lock: another thread may solve the same case, to the same bits.
-        let (assessment, draws) = self.model.assess_with_draws(boulder, burns);
-        let case = Arc::new(Case { assessment, draws });
-        let mut store = store();
-        if store.len() < self.capacity {
-            store.insert(key, Arc::clone(&case));
-        }
-        case
+        let solve = || {
+            let (assessment, draws) = self.model.assess_with_draws(boulder, burns);
+            Arc::new(Case { assessment, spalls: self.model.spall_draws(&draws) })
+        };
+        let place = {
+            let mut store = self.solved.lock().unwrap_or_else(PoisonError::into_inner);
+            match store.get(&key) {
+                Some(place) => Arc::clone(place),
+                None if store.len() < self.capacity => Arc::clone(store.entry(key).or_default()),
+                None => return solve(),
+            }
+        };
+        // Solved outside the lock of the store. A thread that meets a case under way waits for it: solving it too would take as long.
+        Arc::clone(place.get_or_init(solve))
     }
 }
 
@@ -90,6 +92,6 @@ mod tests {
         let other = cases.solve(&boulder("c", 0.6), &[]);
         assert!(Arc::ptr_eq(&first, &same) && !Arc::ptr_eq(&first, &other));
         let (assessment, draws) = model.assess_with_draws(&boulder("d", 0.5), &[]);
-        assert_eq!((&assessment, &draws), (&same.assessment, &same.draws));
+        assert_eq!((&assessment, &model.spall_draws(&draws)), (&same.assessment, &same.spalls));
     }
 }

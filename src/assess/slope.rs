@@ -40,11 +40,19 @@ pub(super) fn spall_draw(draw: &DrawSummary, fire_severity_u: f64) -> SpallDraw 
 }
 
 impl Model {
+    /// What the statics needs of the thermal draws of a boulder, in their order.
+    pub fn spall_draws(&self, draws: &[DrawSummary]) -> Vec<SpallDraw> {
+        draws.iter().zip(&self.fire_coordinates).map(|(draw, fire)| spall_draw(draw, *fire)).collect()
+    }
+
     /// The source likelihood of an assessed boulder from its place and its thermal draws.
     pub fn source(&self, boulder: &Boulder, placed: &Placed, draws: &[DrawSummary]) -> SourceSummary {
-        let spalls: Vec<SpallDraw> =
-            draws.iter().zip(&self.fire_coordinates).map(|(draw, fire)| spall_draw(draw, *fire)).collect();
+        self.source_of(boulder, placed, &self.spall_draws(draws))
+    }
+
+    /// The same from what [`Model::spall_draws`] made of them.
+    pub fn source_of(&self, boulder: &Boulder, placed: &Placed, spalls: &[SpallDraw]) -> SourceSummary {
         let inputs = StaticsInputs::of(boulder, placed.raster_slope_deg);
-        assess_source(&inputs, &spalls, &self.static_points, &self.settings.rockfall, self.settings.horizon_days)
+        assess_source(&inputs, spalls, &self.static_points, &self.settings.rockfall, self.settings.horizon_days)
     }
 }

@@ -3,6 +3,7 @@
 use std::collections::BTreeSet;
 use std::io::Write;
 use std::ops::ControlFlow;
+use std::sync::MutexGuard;
 use std::time::Instant;
 
 use indicatif::{ProgressBar, ProgressStyle};
@@ -24,7 +25,7 @@ use spallcast::input::{
 use spallcast::output::burns::burn_results;
 use spallcast::output::{
     BoulderResult, LayerHead, OptionsRecord, OutputDirectory, RunCounts, RunRecord, SegmentRow, SourceColumns,
-    write_boulder_line, write_boulders, write_burns, write_inspection, write_trails,
+    write_boulders, write_burns, write_inspection, write_trails,
 };
 #[cfg(feature = "gpkg")]
 use spallcast::output::{PackageHead, write_geopackage};
@@ -41,12 +42,13 @@ use spallcast::trail::survey::{Survey, Surveyed, survey};
 
 use super::args::AssessArgs;
 use super::exit::{Exit, Stop};
+use super::interrupt;
 use super::messages::Messages;
 use super::plan::{Plan, Source, Target};
-use super::summary;
+use super::{stream, summary};
 
-/// Boulders that are read before they are run, in a stream: enough to keep the threads busy, few enough to hold.
-const STREAM_CHUNK: usize = 1024;
+/// What an interrupted run leaves.
+const LEFT: &str = "nothing was written, earlier results are as they were";
 
 /// Runs the main job.
 pub fn run(args: &AssessArgs) -> Result<Exit, Stop> {
@@ -61,32 +63,36 @@ pub fn run_plan(plan: Plan) -> Result<Exit, Stop> {
         let _ = rayon::ThreadPoolBuilder::new().num_threads(threads).build_global();
     }
     match plan.out.clone() {
-        Some(Target::Stream) => stream(plan, &messages),
-        Some(Target::Folder(folder)) => Job::read(plan, &messages)?.finish(&folder, &messages),
+        Some(Target::Stream) => stream::run(&plan, &messages),
+        Some(Target::Folder(folder)) => {
+            interrupt::watch(messages, LEFT);
+            Job::read(plan, &messages)?.finish(&folder, &messages)
+        }
         None => unreachable!("a plan of assess has a target"),
     }
 }
 
 /// What is the same for every boulder of a run.
-struct Shared<'a> {
-    model: &'a Model,
-    cases: Cases<'a>,
-    burns: &'a [Burn],
-    burned: Burned<'a>,
-    terrain: Option<&'a Terrain>,
+pub(super) struct Shared<'a> {
+    pub(super) model: &'a Model,
+    pub(super) cases: Cases<'a>,
+    pub(super) burns: &'a [Burn],
+    pub(super) burned: Burned<'a>,
+    pub(super) terrain: Option<&'a Terrain>,
 }
 
 /// One boulder, run.
-struct Worked {
-    feature: BoulderFeature,
-    assessment: Assessment,
+pub(super) struct Worked {
+    pub(super) feature: BoulderFeature,
+    pub(super) assessment: Assessment,
     source: Option<SourceSummary>,
     placed: Option<Placed>,
     within: Vec<usize>,
 }
 
 impl Shared<'_> {
-    fn work(&self, feature: BoulderFeature) -> Worked {
+    /// Runs one record.
+    pub(super) fn work(&self, feature: BoulderFeature) -> Worked {
         let boulder = match &feature.boulder {
             Ok(boulder) => boulder,
             Err(finding) => {
@@ -110,13 +116,13 @@ impl Shared<'_> {
         if feature.remarks.iter().any(|r| r.code == "number_as_text") {
             assessment.flags.insert(Flag::NumberAsText);
         }
-        let source = (!case.draws.is_empty()).then(|| self.model.source(boulder, &placed, &case.draws));
+        let source = (!case.spalls.is_empty()).then(|| self.model.source_of(boulder, &placed, &case.spalls));
         Worked { assessment, source, placed: Some(placed), within, feature }
     }
 }
 
 /// The columns of a source. Flags of the place go with it where there is a source at all.
-fn source_columns(worked: &Worked) -> SourceColumns {
+pub(super) fn source_columns(worked: &Worked) -> SourceColumns {
     let Some(source) = &worked.source else { return SourceColumns::default() };
     let mut flags = source.flags.clone();
     flags.extend(worked.placed.iter().flat_map(|p| p.flags.iter().copied()));
@@ -145,6 +151,8 @@ struct Job {
     worked: Vec<Worked>,
     as_of: Date,
     directory: OutputDirectory,
+    /// Goes after the folder: whoever interrupts waits until it is clean.
+    gate: MutexGuard<'static, ()>,
     clock: Instant,
 }
 
@@ -207,6 +215,7 @@ impl Job {
             })
             .collect();
         let Some(Target::Folder(folder)) = &plan.out else { unreachable!("a job writes into a folder") };
+        let gate = interrupt::hold();
         let directory = OutputDirectory::prepare(folder, &inputs).map_err(|e| Stop::Failed(e.to_string()))?;
         messages.findings(&findings);
 
@@ -224,26 +233,29 @@ impl Job {
         let worked: Vec<Worked> = features
             .into_par_iter()
             .map(|feature| {
+                interrupt::check(LEFT)?;
                 let worked = shared.work(feature);
                 bar.inc(1);
-                worked
+                Ok(worked)
             })
-            .collect();
+            .collect::<Result<_, Stop>>()
+            .inspect_err(|_| bar.finish_and_clear())?;
         bar.finish_and_clear();
         drop(shared);
         record.timing("boulders", clock_run.elapsed().as_secs_f64());
-        Ok(Job { plan, record, model, burns, trails, terrain, worked, as_of, directory, clock })
+        Ok(Job { plan, record, model, burns, trails, terrain, worked, as_of, directory, gate, clock })
     }
 
     /// Surveys the trails, ranks, writes and sums up.
     fn finish(self, folder: &std::path::Path, messages: &Messages) -> Result<Exit, Stop> {
-        let Job { plan, mut record, model, burns, trails, terrain, worked, as_of, mut directory, clock } = self;
+        let Job { plan, mut record, model, burns, trails, terrain, worked, as_of, gate, mut directory, clock } = self;
         let settings = &plan.settings;
         let clock_trails = Instant::now();
         let known: Vec<usize> = (0..worked.len()).filter(|i| worked[*i].feature.boulder.is_ok()).collect();
         let surveyed: Vec<Surveyed> = known.iter().map(|i| surveyed(&worked[*i], &burns.burns)).collect();
         let survey = survey(&trails, &surveyed, terrain.as_ref(), settings, as_of);
         drop(surveyed);
+        interrupt::check(LEFT)?;
         record.timing("trails", clock_trails.elapsed().as_secs_f64());
         if survey.doubtful_trail_heights > 0 {
             record.findings([&trail_height_finding(&plan, survey.doubtful_trail_heights)]);
@@ -282,6 +294,7 @@ impl Job {
         let profiles = first_profiles(&model, &results, &order, &burns);
         let burn_rows = burn_results(&burns, &results);
         let mut write = |name: &str, fill: &mut dyn FnMut(&mut dyn Write) -> std::io::Result<()>| {
+            interrupt::check(LEFT)?;
             directory.write(name, |out| fill(out)).map_err(|e| Stop::Failed(e.to_string()))
         };
         write("boulders.sld", &mut |out| out.write_all(sld::boulders().as_bytes()))?;
@@ -318,10 +331,12 @@ impl Job {
         record.files = directory.written().to_vec();
         let text = record.json();
         directory.write("run.json", |out| out.write_all(text.as_bytes())).map_err(|e| Stop::Failed(e.to_string()))?;
+        interrupt::check(LEFT)?;
         let committed = directory.commit().map_err(|e| Stop::Failed(e.to_string()))?;
         for kept in &committed.kept_edits {
             messages.say(&format!("kept a copy of an edited result: {kept}"));
         }
+        drop(gate);
         for line in summary::lines(&results, &order, &rows, &record, folder, valid_until) {
             messages.say(&line);
         }
@@ -330,7 +345,7 @@ impl Job {
 }
 
 /// The inventory from wherever it comes.
-fn read_inventory(
+pub(super) fn read_inventory(
     source: &Source,
     catalogue: &Catalogue,
     duplicates: Duplicates,
@@ -343,70 +358,6 @@ fn read_inventory(
             (read_boulders_from(stdin, STANDARD_INPUT, catalogue, duplicates, sink)?, STANDARD_INPUT.to_owned())
         }
     })
-}
-
-/// Boulders in, boulders out, one line each, in constant memory.
-fn stream(plan: Plan, messages: &Messages) -> Result<Exit, Stop> {
-    if plan.trails.is_some() {
-        return Err(Stop::Usage(
-            "--out - writes boulders only; name a folder to get trails, which need all boulders at once".to_owned(),
-        ));
-    }
-    if plan.strict {
-        return Err(Stop::Usage(
-            "--strict needs a folder for --out: a stream cannot take back what it wrote".to_owned(),
-        ));
-    }
-    let burns = read_burns(&plan.burn)?;
-    messages.findings(plan.findings.iter().chain(&burns.findings));
-    let terrain = plan
-        .terrain
-        .as_ref()
-        .map(|path| read_terrain(path).map_err(|e| Stop::Failed(e.to_string())))
-        .transpose()?
-        .map(|read| read.terrain);
-    let model = Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
-    let shared = Shared {
-        model: &model,
-        cases: Cases::new(&model),
-        burns: &burns.burns,
-        burned: Burned::new(&burns.burns),
-        terrain: terrain.as_ref(),
-    };
-    let mut out = std::io::BufWriter::new(std::io::stdout().lock());
-    let mut chunk: Vec<BoulderFeature> = Vec::with_capacity(STREAM_CHUNK);
-    let mut counts = RunCounts::default();
-    let mut stopped: Option<std::io::Error> = None;
-    let mut run_chunk = |chunk: &mut Vec<BoulderFeature>| -> std::io::Result<()> {
-        let worked: Vec<Worked> = std::mem::take(chunk).into_par_iter().map(|f| shared.work(f)).collect();
-        for worked in worked {
-            messages.findings(worked.feature.remarks.iter().chain(worked.feature.boulder.as_ref().err()));
-            let source = source_columns(&worked);
-            let mut result = BoulderResult::new(worked.feature, worked.assessment, plan.settings.horizon_days);
-            result.source = source;
-            counts.add(&result);
-            write_boulder_line(&mut out, &result)?;
-        }
-        out.flush()
-    };
-    let read = read_inventory(&plan.boulders, &plan.catalogue, Duplicates::RefuseLater, |feature| {
-        chunk.push(feature);
-        if chunk.len() == STREAM_CHUNK
-            && let Err(error) = run_chunk(&mut chunk)
-        {
-            stopped = Some(error);
-            return ControlFlow::Break(());
-        }
-        ControlFlow::Continue(())
-    });
-    if let Some(error) = stopped {
-        return Err(error.into());
-    }
-    run_chunk(&mut chunk)?;
-    let (summary, _) = read?;
-    messages.findings(&summary.findings);
-    messages.say(&format!("{} boulders, {} assessed, {} not", counts.records, counts.assessed, counts.not_assessed));
-    Ok(if counts.not_assessed > 0 { Exit::Partly } else { Exit::Done })
 }
 
 fn surveyed<'a>(worked: &'a Worked, burns: &[Burn]) -> Surveyed<'a> {

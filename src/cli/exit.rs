@@ -26,6 +26,8 @@ pub enum Stop {
     Failed(String),
     /// The reader of our output went away.
     ClosedPipe,
+    /// Asked to end (Ctrl-C, a job's time limit); what is left behind.
+    Interrupted(&'static str),
 }
 
 impl From<spallcast::input::InputError> for Stop {
@@ -53,6 +55,10 @@ impl Stop {
             Stop::Usage(text) => {
                 messages.error(&text);
                 Exit::Usage
+            }
+            Stop::Interrupted(left) => {
+                messages.error(&format!("interrupted; {left}"));
+                Exit::Failed
             }
             Stop::Failed(text) => {
                 messages.error(&text);

@@ -63,14 +63,7 @@ impl Messages {
         let mut digest = Digest::new(SHOWN_OF_A_KIND);
         findings.into_iter().for_each(|f| digest.add(f.clone()));
         for group in digest.groups() {
-            for finding in &group.first {
-                let word = match group.severity {
-                    Severity::Note => "note: ",
-                    Severity::Warning => "warning: ",
-                    Severity::Refusal => "refused: ",
-                };
-                line(&format!("{word}{finding}"));
-            }
+            group.first.iter().for_each(finding_line);
             let more = group.count - group.first.len() as u64;
             if more > 0 {
                 line(&format!("  and {more} more of this kind; `spallcast check --json-log` lists all"));
@@ -78,9 +71,56 @@ impl Messages {
         }
     }
 
+    /// Findings as they come, for streams: of each kind the first few, and at the end how many more there were.
+    pub fn running(&self) -> RunningFindings {
+        RunningFindings { messages: *self, digest: Digest::new(0) }
+    }
+
     fn json_line(&self, level: &str, text: &str, finding: Option<&Diagnostic>) {
         line(&json_line(level, text, finding));
     }
+}
+
+/// Findings of a stream, counted by kind and shown while they are few.
+#[derive(Debug)]
+pub struct RunningFindings {
+    messages: Messages,
+    digest: Digest,
+}
+
+impl RunningFindings {
+    /// Shows or counts one.
+    pub fn add(&mut self, finding: &Diagnostic) {
+        if self.messages.quiet {
+            return;
+        }
+        if self.messages.json {
+            self.messages.json_line(finding.severity.word(), &finding.to_string(), Some(finding));
+            return;
+        }
+        if self.digest.count(finding) <= SHOWN_OF_A_KIND as u64 {
+            finding_line(finding);
+        }
+    }
+
+    /// Tells how many were not shown.
+    pub fn end(&self) {
+        for group in self.digest.groups() {
+            let more = group.count.saturating_sub(SHOWN_OF_A_KIND as u64);
+            if more > 0 {
+                line(&format!("  and {more} more `{}`; --json-log lists all", group.code));
+            }
+        }
+    }
+}
+
+fn finding_line(finding: &Diagnostic) {
+    let word = match finding.severity {
+        Severity::Note => "note: ",
+        Severity::Warning => "warning: ",
+        Severity::Refusal => "refused: ",
+    };
+    line(&format!("{word}{finding}"));
 }
 
 /// A line on standard error; a closed one is no reason to stop.

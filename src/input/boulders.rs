@@ -1,8 +1,8 @@
 //! Features and rows to boulders, one at a time.
 //!
 //! Each record of the file becomes one [`BoulderFeature`]: its geometry and properties as they came, and either the
-//! boulder in SI or the finding that refuses it. Memory is one record, plus 16 bytes a record where repeated names are
-//! watched for while streaming.
+//! boulder in SI or the finding that refuses it. Memory is one record, plus 16 bytes a record (twice that just after the
+//! table of them has grown) where repeated names are watched for while streaming.
 
 use std::borrow::Cow;
 use std::collections::HashMap;
@@ -107,7 +107,7 @@ fn read(
     let known = boulder_record::columns();
     let mut reader = Reader { name, catalogue, columns: Columns::new("boulder", known.clone()) };
     let mut findings = Vec::new();
-    let mut seen: HashMap<u128, u64> = HashMap::new();
+    let mut seen: HashMap<NameHash, u32> = HashMap::new();
     let mut stopped = false;
     let mut hand_on = |mut feature: BoulderFeature, line: u64| {
         if duplicates == Duplicates::RefuseLater
@@ -115,7 +115,7 @@ fn read(
         {
             match seen.entry(hash(&id)) {
                 Entry::Vacant(free) => {
-                    free.insert(line);
+                    free.insert(u32::try_from(line).unwrap_or(u32::MAX));
                 }
                 Entry::Occupied(first) => {
                     let found = format!("the name was used before, in line {}", first.get());
@@ -184,14 +184,17 @@ fn refuse(feature: &mut BoulderFeature, finding: Diagnostic) {
     }
 }
 
-/// A hash wide enough that two names of a million do not meet.
-fn hash(id: &str) -> u128 {
+/// 96 bits of a name: among a hundred million names the chance that two share them is under one in ten million million.
+type NameHash = [u32; 3];
+
+fn hash(id: &str) -> NameHash {
     let half = |salt: u8| {
         let mut hasher = DefaultHasher::new();
         (salt, id).hash(&mut hasher);
-        u128::from(hasher.finish())
+        hasher.finish()
     };
-    (half(1) << 64) | half(2)
+    let (first, second) = (half(1), half(2));
+    [first as u32, (first >> 32) as u32, second as u32]
 }
 
 struct Reader<'r> {

@@ -169,6 +169,22 @@ impl Digest {
 
     /// Counts one finding.
     pub fn add(&mut self, finding: Diagnostic) {
+        let keep = self.keep;
+        let group = self.group(&finding);
+        group.count += 1;
+        if group.first.len() < keep {
+            group.first.push(finding);
+        }
+    }
+
+    /// Counts one finding without keeping it; how many of its kind there have been.
+    pub fn count(&mut self, finding: &Diagnostic) -> u64 {
+        let group = self.group(finding);
+        group.count += 1;
+        group.count
+    }
+
+    fn group(&mut self, finding: &Diagnostic) -> &mut DigestGroup {
         let known = self.groups.iter().position(|g| g.code == finding.code && g.severity == finding.severity);
         let at = known.unwrap_or_else(|| {
             self.groups.push(DigestGroup {
@@ -179,11 +195,7 @@ impl Digest {
             });
             self.groups.len() - 1
         });
-        let group = &mut self.groups[at];
-        group.count += 1;
-        if group.first.len() < self.keep {
-            group.first.push(finding);
-        }
+        &mut self.groups[at]
     }
 
     /// The groups in order of first sight.

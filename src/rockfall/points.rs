@@ -11,8 +11,10 @@
 //!
 //! Valid for any number of draws: past 65,536 points the sequence starts again under another seed.
 
+use super::friction::{UNKNOWN_CONTACT, UNKNOWN_SUPPORT, contact_index, pick, support_index};
 use crate::ensemble::distribution::normal_score;
 use crate::settings::RockfallSettings;
+use crate::site::{Contact, Support};
 
 /// Static draws aimed at; a multiple of the thermal draws.
 pub const STATIC_DRAWS: usize = 8192;
@@ -20,6 +22,8 @@ pub const STATIC_DRAWS: usize = 8192;
 const SEQUENCE_POINTS: usize = 1 << 16;
 /// Keeps this set's scrambles apart from those of the thermal set; an arbitrary constant.
 const SEED_MARK: u32 = 0x51A7_1C5E;
+/// Where what is guessed for an unrecorded support stands, after the supports.
+const NOT_RECORDED: usize = 5;
 
 /// What each coordinate of a static draw stands for.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -101,7 +105,7 @@ pub struct StaticPoints {
     /// tan of the slope's error, for a slope taken from the raster.
     pub(crate) raster_slope_error_tan: Vec<f64>,
     /// tan of the friction angle, by contact.
-    pub(crate) friction_tan: [Vec<f64>; 5],
+    friction_tan: [Vec<f64>; 5],
     /// Normal scores and shares of the geometry.
     pub(crate) setback_z: Vec<f64>,
     pub(crate) setback_u: Vec<f64>,
@@ -109,17 +113,22 @@ pub struct StaticPoints {
     pub(crate) height_u: Vec<f64>,
     pub(crate) seat_z: Vec<f64>,
     pub(crate) seat_u: Vec<f64>,
-    pub(crate) seat_loss_u: Vec<f64>,
-    pub(crate) support_loss_u: Vec<f64>,
+    seat_loss_u: Vec<f64>,
     pub(crate) base_heated_u: Vec<f64>,
     /// 1 in a wet spell, else 0.
-    pub(crate) wet: Vec<bool>,
+    pub(crate) wet: Vec<f64>,
     /// Uplift share in a wet spell; 0 when dry.
     pub(crate) uplift_share: Vec<f64>,
     pub(crate) boulder_face_share: Vec<f64>,
     pub(crate) outcrop_face_share: Vec<f64>,
-    pub(crate) contact_u: Vec<f64>,
-    pub(crate) support_u: Vec<f64>,
+    /// tan of the friction angle where no contact is recorded.
+    unknown_friction_tan: Vec<f64>,
+    /// Share of the seat lost where no contact is recorded: none off burnt duff.
+    unknown_seat_loss: Vec<f64>,
+    zeros: Vec<f64>,
+    /// By support, the last where none is recorded: 1 where there is one, 1 where it outlasts the horizon, else 0.
+    held: [Vec<f64>; 6],
+    support_stays: [Vec<f64>; 6],
 }
 
 /// The share in (0, 1) of one coordinate of one draw.
@@ -160,37 +169,75 @@ impl StaticPoints {
         let n = thermal_draws * per_thermal;
         let column = |dim: StaticDim, f: &dyn Fn(f64) -> f64| -> Vec<f64> { (0..n).map(|i| f(u(dim, i))).collect() };
         let slope = |sd_deg: f64| column(StaticDim::Slope, &|s| libm::tan((sd_deg * normal_score(s)).to_radians()));
-        let wet: Vec<bool> = (0..n).map(|i| u(StaticDim::WetSpell, i) < settings.wet_spell_probability).collect();
+        let wet = column(StaticDim::WetSpell, &|s| f64::from(u8::from(s < settings.wet_spell_probability)));
         let mut uplift_share = column(StaticDim::Uplift, &|s| settings.uplift_share.quantile(s));
         for (share, wet) in uplift_share.iter_mut().zip(&wet) {
-            if !wet {
+            if *wet == 0.0 {
                 *share = 0.0;
             }
         }
+        let friction_tan =
+            settings.friction_deg.map(|d| column(StaticDim::Friction, &|s| libm::tan(d.quantile(s).to_radians())));
+        let seat_loss_u = column(StaticDim::SeatLoss, &|s| s);
+        let guess = |weights, dim| -> Vec<usize> { (0..n).map(|i| pick(weights, u(dim, i))).collect() };
+        let contacts = guess(&UNKNOWN_CONTACT, StaticDim::UnknownContact);
+        let supports = guess(&UNKNOWN_SUPPORT, StaticDim::UnknownSupport);
+        let (duff, no_support) = (contact_index(Contact::BurntDuff), support_index(Support::None));
+        let support_of = |which: usize, i: usize| if which < NOT_RECORDED { which } else { supports[i] };
+        let by_support = |f: &dyn Fn(usize, usize) -> bool| -> [Vec<f64>; 6] {
+            std::array::from_fn(|which| (0..n).map(|i| f64::from(u8::from(f(support_of(which, i), i)))).collect())
+        };
         StaticPoints {
             thermal_draws,
             per_thermal,
+            unknown_friction_tan: (0..n).map(|i| friction_tan[contacts[i]][i]).collect(),
+            unknown_seat_loss: (0..n).map(|i| if contacts[i] == duff { seat_loss_u[i] } else { 0.0 }).collect(),
+            zeros: vec![0.0; n],
+            held: by_support(&|support, _| support != no_support),
+            support_stays: by_support(&|support, i| {
+                support != no_support && u(StaticDim::SupportLoss, i) >= settings.support_loss[support]
+            }),
+            friction_tan,
+            seat_loss_u,
             slope_error_tan: slope(settings.slope_sd_deg),
             raster_slope_error_tan: slope(settings.raster_slope_sd_deg),
-            friction_tan: settings
-                .friction_deg
-                .map(|d| column(StaticDim::Friction, &|s| libm::tan(d.quantile(s).to_radians()))),
             setback_z: column(StaticDim::Setback, &normal_score),
             setback_u: column(StaticDim::Setback, &|s| s),
             height_z: column(StaticDim::CentroidHeight, &normal_score),
             height_u: column(StaticDim::CentroidHeight, &|s| s),
             seat_z: column(StaticDim::Seat, &normal_score),
             seat_u: column(StaticDim::Seat, &|s| s),
-            seat_loss_u: column(StaticDim::SeatLoss, &|s| s),
-            support_loss_u: column(StaticDim::SupportLoss, &|s| s),
             base_heated_u: column(StaticDim::BaseHeated, &|s| s),
             wet,
             uplift_share,
             boulder_face_share: column(StaticDim::FaceShare, &|s| settings.boulder_face_share.quantile(s)),
             outcrop_face_share: column(StaticDim::FaceShare, &|s| settings.outcrop_face_share.quantile(s)),
-            contact_u: column(StaticDim::UnknownContact, &|s| s),
-            support_u: column(StaticDim::UnknownSupport, &|s| s),
         }
+    }
+
+    /// tan of the friction angle under a contact, or under what is guessed where none is recorded.
+    pub(crate) fn friction_tan(&self, contact: Option<Contact>) -> &[f64] {
+        contact.map_or(&self.unknown_friction_tan, |c| &self.friction_tan[contact_index(c)])
+    }
+
+    /// Share of the seat lost within the horizon under a contact: none off burnt duff.
+    pub(crate) fn seat_loss(&self, contact: Option<Contact>) -> &[f64] {
+        match contact {
+            None => &self.unknown_seat_loss,
+            Some(Contact::BurntDuff) => &self.seat_loss_u,
+            Some(_) => &self.zeros,
+        }
+    }
+
+    /// A column of `n` zeros, no longer than the others.
+    pub(crate) fn none(&self, n: usize) -> &[f64] {
+        &self.zeros[..n]
+    }
+
+    /// 1 where something holds the boulder from below, and 1 where that outlasts the horizon, else 0.
+    pub(crate) fn support(&self, support: Option<Support>) -> (&[f64], &[f64]) {
+        let which = support.map_or(NOT_RECORDED, support_index);
+        (&self.held[which], &self.support_stays[which])
     }
 
     /// Thermal draws that the points pair with.

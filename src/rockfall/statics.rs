@@ -85,7 +85,11 @@ pub(crate) fn seat_tangent(radius_m: f64, seat_m: f64) -> f64 {
 }
 
 /// tan(b + atan k) from tan b; infinite where the sum reaches a right angle.
+#[inline]
 pub(crate) fn tan_with_shaking(tan_slope: f64, shaking_k: f64) -> f64 {
+    if shaking_k == 0.0 {
+        return tan_slope;
+    }
     let below = 1.0 - shaking_k * tan_slope;
     if below <= 0.0 { f64::INFINITY } else { (tan_slope + shaking_k) / below }
 }
@@ -119,21 +123,23 @@ pub(crate) struct Demand {
 
 impl Stance {
     /// Whether any mode has a factor of safety under 1 without a support.
-    #[inline]
+    #[inline(always)]
     pub(crate) fn fails(&self, demand: Demand) -> bool {
-        let tan = tan_with_shaking(self.tan_slope, demand.shaking_k);
-        if self.setback_m < self.centroid_height_m * tan {
-            return true;
-        }
-        if self.seat_m >= SEAT_MIN_M {
-            let rise = self.radius_m - self.seat_m;
-            // tan a < tan b with tan a = sqrt(r2 - c2)/c, squared to spare the root; both sides are positive.
-            let sunk = self.radius_m * self.radius_m - rise * rise;
-            rise > 0.0 && tan > 0.0 && sunk < (rise * tan) * (rise * tan)
-        } else {
-            let normal = (1.0 - demand.shaking_k * self.tan_slope - demand.uplift_share).max(0.0);
-            self.tan_friction * normal < self.tan_slope + demand.shaking_k
-        }
+        self.fails_under(tan_with_shaking(self.tan_slope, demand.shaking_k), demand)
+    }
+
+    /// [`Stance::fails`] where tan(b + atan k) is known. Without branches, so that loops over draws run in vector registers.
+    #[inline(always)]
+    pub(crate) fn fails_under(&self, tan: f64, demand: Demand) -> bool {
+        let overturns = self.setback_m < self.centroid_height_m * tan;
+        let rise = self.radius_m - self.seat_m;
+        // tan a < tan b with tan a = sqrt(r2 - c2)/c, squared to spare the root; both sides are positive.
+        let sunk = self.radius_m * self.radius_m - rise * rise;
+        let rolls = (rise > 0.0) & (tan > 0.0) & (sunk < (rise * tan) * (rise * tan));
+        let normal = (1.0 - demand.shaking_k * self.tan_slope - demand.uplift_share).max(0.0);
+        let slides = self.tan_friction * normal < self.tan_slope + demand.shaking_k;
+        let seated = self.seat_m >= SEAT_MIN_M;
+        overturns | (seated & rolls) | (!seated & slides)
     }
 
     /// The mode with the least factor of safety.
