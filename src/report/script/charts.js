@@ -4,7 +4,7 @@ const CHARTS = (() => {
   const frame = (height, label, wide) => s("svg", { viewBox: `0 0 ${wide || W} ${height}`, role: "img", "aria-label": label });
   const text = (x, y, words, kind, anchor) => s("text", { x, y, class: kind || "axis", "text-anchor": anchor || "middle" }, words);
   const line = (x1, y1, x2, y2, kind) => s("line", { x1, y1, x2, y2, class: kind });
-  const numbers = (name) => DATA.boulders.rows.map((_, row) => boulder(row, name)).filter((v) => typeof v === "number" && isFinite(v));
+  const numbers = (name) => rows_of(DATA.boulders).map((row) => boulder(row, name)).filter((v) => typeof v === "number" && isFinite(v));
   const quantile = (sorted, q) => { const at = q * (sorted.length - 1), i = Math.floor(at); return sorted[i] + (at - i) * ((sorted[i + 1] ?? sorted[i]) - sorted[i]); };
   const nothing = (home, words) => by_id(home).append(h("p", { class: "absent" }, words));
   function log_axis(svg, low, high, x, y, foot) {
@@ -39,7 +39,7 @@ const CHARTS = (() => {
 
   function residence() {
     const home = by_id("chart-residence");
-    const rows = DATA.boulders.rows.map((_, row) => row).filter((row) => DATA.boulders.residence[row]);
+    const rows = rows_of(DATA.boulders).filter((row) => DATA.boulders.residence[row]);
     if (!rows.length) return nothing("chart-residence", "No boulder has both a fire and a likelihood.");
     const choice = h("select", { id: "residence-figure" }, [["p_spall", "likelihood of spalling"], ["p_source", "source likelihood"]].map(([v, t]) => h("option", { value: v }, t)));
     const place = h("div");
@@ -47,7 +47,7 @@ const CHARTS = (() => {
     function show() {
       const name = choice.value, all = rows.filter((row) => typeof boulder(row, name) === "number"), skip = Math.ceil(all.length / 2000);
       const svg = frame(330, choice.selectedOptions[0].textContent + " against fire residence time"), t = (row) => Math.max(0.02, DATA.boulders.residence[row][0]);
-      const low = Math.min(0.1, ...rows.map(t)), high = Math.max(10, ...rows.map(t)) * 1.3;
+      const low = rows.reduce((least, row) => Math.min(least, t(row)), 0.1), high = rows.reduce((most, row) => Math.max(most, t(row)), 10) * 1.3;
       const x = (v) => 48 + ((Math.log10(v) - Math.log10(low)) / (Math.log10(high) - Math.log10(low))) * (W - 64), y = (p) => 282 - p * 266;
       log_axis(svg, low, high, x, 16, 282);
       for (const p of [0, 0.25, 0.5, 0.75, 1]) svg.append(line(48, y(p), W - 16, y(p), "grid"), text(40, y(p) + 4, p * 100 + " %", "axis", "end"));
@@ -66,7 +66,7 @@ const CHARTS = (() => {
   }
 
   function drivers() {
-    const top = DATA.boulders.rows.map((_, row) => row).filter((row) => boulder(row, "status") === "assessed").slice(0, 10);
+    const top = rows_of(DATA.boulders).filter((row) => boulder(row, "status") === "assessed").slice(0, 10);
     if (!top.length) return nothing("chart-drivers", "No boulder was assessed.");
     const tall = 40, foot = 14 + top.length * tall, left = 92, svg = frame(foot + 44, "What drives the ten assessed boulders that come first in the order of inspection"), x = (p) => left + p * (W - left - 20);
     for (const p of [0, 0.25, 0.5, 0.75, 1]) svg.append(line(x(p), 6, x(p), foot, "grid"), text(x(p), foot + 16, p * 100 + " %"));

@@ -1,7 +1,7 @@
 // Every trail as a strip of metres: the proposal as colour, hatch and height, the likelihood of arrival as a bar above.
 const STRIPS = (() => {
   const trails = new Map();
-  DATA.trails.rows.forEach((_, at) => { const id = stretch(at, "trail_id"); if (!trails.has(id)) trails.set(id, []); trails.get(id).push(at); });
+  rows_of(DATA.trails).forEach((at) => { const id = stretch(at, "trail_id"); if (!trails.has(id)) trails.set(id, []); trails.get(id).push(at); });
   const WIDE = 1000, TALL = 118, BASE = 56, FLOOR = 1e-4;
   const HEIGHTS = [34, 28, 20, 10, 34];
   // Decades: 1 in 10,000 and below at the foot, 1 at the top.
@@ -43,7 +43,7 @@ const STRIPS = (() => {
     for (const [id, list] of trails) home.append(strip(id, list));
     const fields = ["trail_id", "from_m", "to_m", "proposal", "p_any", "p_any_high", "death_chance_per_passage_p95", "review_on"].map((n) => DATA.trails.fields[DATA.trails.at.get(n)]).filter(Boolean);
     const body = h("tbody");
-    const details = h("details", { ontoggle: () => { if (!body.children.length) add(body, DATA.trails.rows.map((_, at) => h("tr", {}, fields.map((f) => {
+    const details = h("details", { ontoggle: () => { if (!body.children.length) add(body, rows_of(DATA.trails).map((at) => h("tr", {}, fields.map((f) => {
       const v = cell(DATA.trails, at, f.name);
       if (f.name === "trail_id") return h("th", { scope: "row" }, h("button", { type: "button", class: "link", onclick: () => select("stretch", at, "strip") }, v));
       return h("td", { class: v === null ? "absent" : "" }, f.name === "proposal" ? pill(v) : worded(f, v, false));
