@@ -31,13 +31,13 @@ const TABLE = (() => {
       if (text && !boulder_name(row).toLowerCase().includes(text)) continue;
       STATE.shown.push(row);
     }
-    const weight = { "no-source": 4.5, unknown: 5 };
+    // Light marks first, unknown ones above them, the two heaviest classes on top: neither hides under a lighter mark.
+    const weight = { "no-source": CLASSES.length - 2.7, unknown: CLASSES.length - 2.5 };
     CLASSES.forEach((c, i) => (weight[c.key] = i));
-    // Light marks first, so that what weighs most and what is unknown lies on top.
     STATE.drawn = STATE.shown.filter((row) => DATA.boulders.x[row] !== null).sort((a, b) => weight[STATE.classes[a]] - weight[STATE.classes[b]]);
     const hidden = total - STATE.shown.length, unknown = STATE.shown.filter((row) => STATE.classes[row] === "unknown").length, off = STATE.shown.length - STATE.drawn.length;
-    by_id("shown-words").textContent = `${STATE.shown.length.toLocaleString("en-GB")} of ${total.toLocaleString("en-GB")} boulders shown, ${unknown} of them not assessed` +
-      (off ? `; ${off} without a usable place, in the table only` : "") + (hidden ? `; ${hidden.toLocaleString("en-GB")} hidden by the filters.` : ".") +
+    by_id("shown-words").textContent = `${STATE.shown.length.toLocaleString("en-GB")} of ${total.toLocaleString("en-GB")} boulders shown, ${unknown.toLocaleString("en-GB")} of them not assessed` +
+      (off ? `; ${off.toLocaleString("en-GB")} without a usable place, in the table only` : "") + (hidden ? `; ${hidden.toLocaleString("en-GB")} hidden by the filters.` : ".") +
       (STATE.drawn.length > CROWD ? " Where equal marks lie on one another the map draws one; zoom in to part them." : "");
     page = 0; order(); tell("shown");
   }
@@ -58,9 +58,11 @@ const TABLE = (() => {
   function show() {
     const table = by_id("inspection"), pages = Math.max(1, Math.ceil(sorted.length / PAGE));
     page = Math.min(page, pages - 1);
-    const head = h("tr", {}, SHOWN_COLUMNS.map((c) => h("th", { scope: "col", "aria-sort": sort.name === c.name ? (sort.down ? "descending" : "ascending") : "none" },
-      h("button", { type: "button", title: c.meaning, "data-sort": c.name, onclick: () => { sort = { name: c.name, down: sort.name === c.name && !sort.down }; page = 0; order(); by_id("inspection").querySelector(`[data-sort="${c.name}"]`).focus(); } },
-        heading(c), h("span", { class: "arrow", "aria-hidden": true }, sort.name === c.name ? (sort.down ? "▼" : "▲") : "↕")))));
+    const turn = (c) => { sort = { name: c.name, down: sort.name === c.name && !sort.down }; page = 0; order(); by_id("inspection").querySelector(`[data-sort="${c.name}"]`).focus(); };
+    const arrow = (c) => (sort.name === c.name ? (sort.down ? "▼" : "▲") : "↕");
+    // On paper the head stands on every sheet, which browsers do for text but not for buttons.
+    const title = (c) => printing ? heading(c) : h("button", { type: "button", title: c.meaning, "data-sort": c.name, onclick: () => turn(c) }, heading(c), h("span", { class: "arrow", "aria-hidden": true }, arrow(c)));
+    const head = h("tr", {}, SHOWN_COLUMNS.map((c) => h("th", { scope: "col", "aria-sort": sort.name === c.name ? (sort.down ? "descending" : "ascending") : "none" }, title(c))));
     const rows = (printing ? sorted.slice(0, PRINTED) : sorted.slice(page * PAGE, (page + 1) * PAGE)).map((row) => {
       const chosen = STATE.selected && STATE.selected.kind === "boulder" && STATE.selected.row === row;
       return h("tr", { "data-row": row, class: (STATE.classes[row] === "unknown" ? "unknown" : "") + (chosen ? " chosen" : ""), onclick: () => select("boulder", row, "table") },
