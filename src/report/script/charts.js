@@ -30,7 +30,7 @@ const CHARTS = (() => {
       bins.forEach((b, k) => b && svg.append(s("rect", { x: 16 + k * step + 0.5, width: step - 1, y: base - (b / most) * 40, height: (b / most) * 40, class: "bin bin-" + i })));
       const [a, q1, m, q3, z] = [0.05, 0.25, 0.5, 0.75, 0.95].map((q) => x(quantile(f.values, q)));
       svg.append(line(a, base + 7, z, base + 7, "whisker"), s("rect", { x: q1, y: base + 2, width: Math.max(1, q3 - q1), height: 10, class: "box" }), line(m, base, m, base + 14, "median"));
-      svg.append(text(16, base - 46, `${f.words}: median ${significant(quantile(f.values, 0.5), 2)} mm over ${n} boulders`, "name", "start"));
+      svg.append(text(16, base - 46, `${f.words}: median ${significant(quantile(f.values, 0.5), 2)} mm over ${n} boulders`, "name halo", "start"));
     });
     svg.append(text(W / 2, foot + 36, "expected thickness, given that the family occurs (mm)", "axis strong"));
     const mean = (name) => { const v = numbers(name); return v.length ? percent(v.reduce((a, b) => a + b, 0) / v.length) + ` (${v.length} boulders)` : "not computed"; };
@@ -85,10 +85,11 @@ const CHARTS = (() => {
   }
 
   function depths() {
-    const W = 560, list = DATA.profiles, home = by_id("chart-depth");
+    // On a narrow screen the drawing is narrower, not its letters.
+    const list = DATA.profiles, home = by_id("chart-depth"), W = Math.max(340, Math.min(560, home.clientWidth));
     if (!list.length) return nothing("chart-depth", "No depth profiles were stored with this run. “spallcast probe --id NAME” computes one boulder through time and depth.");
     const choice = h("select", { id: "depth-boulder" }, list.map((p, i) => h("option", { value: i }, p.id))), place = h("div", { class: "pair" });
-    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
+    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels on them name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
     const DASH = ["", "8 3", "2 3", "10 3 2 3", "5 5", "1 4"];
     function show() {
       const p = list[choice.value]; place.replaceChildren();
