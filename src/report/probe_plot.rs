@@ -29,6 +29,9 @@ const CURVE_APART: f64 = 0.06;
 const SECONDS_PER_HOUR: f64 = 3600.0;
 /// From one event's text to the next.
 const EVENT_ROW: f64 = 16.0;
+/// From one row of a key to the next, and where the key begins as a share of the panel's width.
+const KEY_ROW: f64 = 19.0;
+const KEY_FROM: f64 = 0.64;
 /// Room for an event's text beside its line.
 const EVENT_TEXT: f64 = 150.0;
 
@@ -261,6 +264,20 @@ impl ProbePlot<'_> {
         Axis::over(curves.chain([0.0]), true, "temperature, °C")
     }
 
+    /// The axis with room for the key of the curves at its upper right: what runs there stays below the key.
+    fn with_key(&self, mut axis: Axis, height: f64, read: impl Fn(usize, usize) -> f64) -> Axis {
+        let rows = self.curve_rows();
+        let from = KEY_FROM * self.shown_mm() / MM_PER_M;
+        let beneath = rows.iter().flat_map(|row| {
+            let depths = self.probe.depth_m.iter().enumerate().filter(|(_, z)| **z >= from);
+            depths.map(|(j, _)| read(*row, j)).collect::<Vec<_>>()
+        });
+        let highest = beneath.fold(axis.low, f64::max);
+        let share = (12.0 + KEY_ROW * rows.len() as f64) / height;
+        axis.high = axis.high.max(axis.low + (highest - axis.low) / (1.0 - share) * 1.02);
+        axis
+    }
+
     /// The axis with room for a row a label of an event at its top.
     fn with_room(&self, mut axis: Axis, height: f64) -> Axis {
         let rows = self.shown_events().len() as f64;
@@ -323,7 +340,7 @@ impl ProbePlot<'_> {
             panel.curve(&curve, stroke, 2.2);
         }
         let (left, top, right, _) = panel.edges();
-        panel.plate([right - 166.0, top + 6.0, right - 4.0, top + 12.0 + 19.0 * rows.len() as f64]);
+        panel.plate([right - 166.0, top + 6.0, right - 4.0, top + 12.0 + KEY_ROW * rows.len() as f64]);
         for (i, row) in rows.iter().enumerate() {
             // Each letter a little deeper than the one before, so that they stay apart where the curves meet.
             let places: Vec<_> = (0..8)
@@ -334,7 +351,7 @@ impl ProbePlot<'_> {
             panel.label(&places, "bold", letter(i));
         }
         for (i, (row, stroke)) in rows.iter().zip(STROKES).enumerate() {
-            let y = top + 22.0 + 19.0 * i as f64;
+            let y = top + 22.0 + KEY_ROW * i as f64;
             panel.sample(right - 158.0, y - 4.0, stroke);
             let text = format!("{}   {}", letter(i), time_text(self.probe.time_s[*row]));
             panel.text(right - 104.0, y, Anchor::Start, 12.0, "normal", &text);
@@ -343,8 +360,10 @@ impl ProbePlot<'_> {
 
     fn temperature_through_depth(&self, number: usize, place: (f64, f64, f64, f64)) -> String {
         let x = Axis::up_to(self.shown_mm(), "depth below the face, mm");
-        let mut panel = Panel::new(number, place, "Temperature through depth, by time", x, self.temperature_axis());
-        self.through_depth(&mut panel, |row, j| celsius(self.probe.temperature_k[row][j]));
+        let read = |row: usize, j: usize| celsius(self.probe.temperature_k[row][j]);
+        let y = self.with_key(self.temperature_axis(), place.3, read);
+        let mut panel = Panel::new(number, place, "Temperature through depth, by time", x, y);
+        self.through_depth(&mut panel, read);
         panel.finish()
     }
 
@@ -360,10 +379,12 @@ impl ProbePlot<'_> {
         let thickness = self.ensemble.and_then(|r| r.assessment.spall.as_ref()).and_then(|s| s.thickness_quantiles_m);
         let room = heights.iter().copied().fold(0.0, f64::max);
         let below = if thickness.is_some() { -0.26 * room } else { -0.14 * room };
+        let read = |row: usize, j: usize| mpa(self.probe.skin_stress_pa[row][j]);
         let y = Axis::over(heights.into_iter().chain([below]), false, "compression along the face, MPa");
+        let y = self.with_key(y, place.3, read);
         let mut panel = Panel::new(number, place, "Skin stress through depth, by time", x, y);
         panel.band(mpa(strength.low_pa), mpa(strength.middle_pa), mpa(strength.high_pa));
-        self.through_depth(&mut panel, |row, j| mpa(self.probe.skin_stress_pa[row][j]));
+        self.through_depth(&mut panel, read);
         let (left, _, _, _) = panel.edges();
         let at = panel.at_y(mpa(strength.low_pa));
         panel.label(&[(left + 120.0, at - 6.0, Anchor::Start)], "normal", "compressive strength, cold, 5 to 95 %");
