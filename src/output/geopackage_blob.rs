@@ -44,12 +44,13 @@ impl Extent {
         }
     }
 
-    /// The box of all points; not a number where one is not.
-    fn of(points: impl Iterator<Item = (f64, f64)>) -> Extent {
-        points.fold(Extent::NOTHING, |e, (x, y)| match x.is_finite() && y.is_finite() {
-            true => e.with(Extent { min_x: x, max_x: x, min_y: y, max_y: y }),
-            false => Extent { min_x: f64::NAN, max_x: f64::NAN, min_y: f64::NAN, max_y: f64::NAN },
-        })
+    /// The box of all points, or of nothing where a number is not finite.
+    fn of(mut points: impl Iterator<Item = (f64, f64)>) -> Extent {
+        let whole = points.try_fold(Extent::NOTHING, |e, (x, y)| {
+            let finite = x.is_finite() && y.is_finite();
+            finite.then(|| e.with(Extent { min_x: x, max_x: x, min_y: y, max_y: y }))
+        });
+        whole.unwrap_or(Extent::NOTHING)
     }
 
     /// Whether it holds anything.
@@ -82,7 +83,7 @@ pub(super) fn encode(shape: &Shape<'_>) -> Option<Blob> {
         Shape::Line(points) => Extent::of(points.iter().map(|p| (p.lon_deg, p.lat_deg))),
         Shape::Areas(areas) => Extent::of(areas.iter().flat_map(|a| a.exterior().coords().map(|c| (c.x, c.y)))),
     };
-    if !extent.some() || ![extent.min_x, extent.max_x, extent.min_y, extent.max_y].iter().all(|v| v.is_finite()) {
+    if !extent.some() {
         return None;
     }
     let mut bytes = b"GP\0".to_vec();
