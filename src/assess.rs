@@ -3,6 +3,7 @@
 //! [`Model`] holds what is the same for every boulder of a run; [`Model::assess`] takes one boulder and the burns that
 //! cover it. A boulder's numbers depend on its own record, those burns, the settings and the seed, and on nothing else.
 
+pub mod bands;
 pub mod batch;
 pub mod cases;
 pub mod cover;

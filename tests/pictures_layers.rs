@@ -38,10 +38,75 @@ fn a_plot_names_its_quantities_with_units_and_marks_its_events() {
     assert!(!svg.contains("NaN") && !svg.contains("inf "), "a number is not finite");
     // Curves: at least three depths and three times, twice, and one tension; dashes tell them apart.
     assert!(svg.matches("stroke-dasharray=\"10 4\"").count() >= 3);
+    // A band a depth: at least the face and two more, each with its own title.
+    assert!(svg.matches("fill-opacity=\"0.16\"").count() >= 3, "bands of the draws");
+    assert!(texts.iter().any(|t| t.contains("5 to 95 % of 16 draws")), "the key of the bands: {texts:?}");
+    assert!(texts.iter().filter(|t| t.ends_with("mm below the face")).count() >= 2, "{texts:?}");
     let shown = String::from_utf8(output.stdout).expect("text");
     let event = shown.lines().find(|l| l.contains(" after ") && l.contains(" mm, face at")).expect("an event");
     let family = event.split(' ').next().expect("a word");
     assert!(texts.iter().any(|t| t.starts_with(family)), "{family} is not marked in {texts:?}");
+}
+
+/// Boxes of the texts of an SVG that are not turned, as a renderer with the built-in font lays them out.
+fn boxes(svg: &str) -> Vec<(String, resvg::tiny_skia::Rect)> {
+    use resvg::usvg;
+    let mut fonts = usvg::fontdb::Database::new();
+    fonts.load_font_data(include_bytes!("../src/report/fonts/DejaVuSans-subset.ttf").to_vec());
+    let options = usvg::Options {
+        font_family: "DejaVu Sans".to_owned(),
+        fontdb: std::sync::Arc::new(fonts),
+        ..usvg::Options::default()
+    };
+    let tree = usvg::Tree::from_str(svg, &options).expect("a drawing");
+    let mut found = Vec::new();
+    collect(tree.root(), &mut found);
+    found
+}
+
+fn collect(group: &resvg::usvg::Group, into: &mut Vec<(String, resvg::tiny_skia::Rect)>) {
+    for node in group.children() {
+        match node {
+            resvg::usvg::Node::Group(inner) => collect(inner, into),
+            resvg::usvg::Node::Text(text) if text.abs_transform().ky == 0.0 => {
+                let words = text.chunks().iter().map(|c| c.text()).collect::<String>();
+                into.push((words, text.abs_bounding_box()));
+            }
+            _ => {}
+        }
+    }
+}
+
+#[test]
+fn no_two_texts_of_a_plot_lie_on_one_another() {
+    let folder = tempfile::tempdir().expect("a folder");
+    let path = folder.path().join("p.svg");
+    let picture = path.to_str().expect("text");
+    // Early slabs of a weak small stone, long contact in a sphere, a flat face, a face that does not spall.
+    let cases: [&[&str]; 4] = [
+        &["--rock", "granite", "--diameter-m", "0.5", "--exposure", "crown", "--draws", "16"],
+        &["--rock", "basalt", "--diameter-m", "0.3", "--exposure", "smouldering_contact", "--draws", "16"],
+        &["--rock", "sandstone", "--flat", "--exposure", "log_contact"],
+        &["--rock", "granite", "--flat", "--exposure", "light_surface"],
+    ];
+    for case in cases {
+        let mut arguments = vec!["probe", "--plot", picture];
+        arguments.extend(case);
+        let output = spallcast(&arguments);
+        assert_eq!(output.status.code(), Some(0), "{}", String::from_utf8_lossy(&output.stderr));
+        let boxes = boxes(&fs::read_to_string(&path).expect("the picture"));
+        assert!(boxes.len() > 40, "{} texts", boxes.len());
+        for (i, (a, first)) in boxes.iter().enumerate() {
+            for (b, second) in &boxes[i + 1..] {
+                let (across, down) = (
+                    first.right().min(second.right()) - first.left().max(second.left()),
+                    first.bottom().min(second.bottom()) - first.top().max(second.top()),
+                );
+                // Boxes of a font reach above and below its letters: a third of a line may be shared.
+                assert!(across <= 0.0 || down <= 5.0, "{case:?}: “{a}” lies on “{b}” by {across} x {down}");
+            }
+        }
+    }
 }
 
 #[test]

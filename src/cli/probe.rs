@@ -17,6 +17,7 @@ use spallcast::input::terrain::read_terrain;
 use spallcast::input::{Duplicates, read_boulders, read_burns, read_series, read_settings, read_trails};
 use spallcast::output::probe_source::Standing;
 use spallcast::output::probe_table::{self, EnsembleRun, Subject};
+use spallcast::report::probe_bands;
 use spallcast::report::probe_plot::{self, ProbePlot};
 use spallcast::rock::Property;
 use spallcast::rock::catalogue::Catalogue;
@@ -141,6 +142,11 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
             return Err(Stop::Usage("--draws samples the fire too and cannot be combined with --series".to_owned()));
         }
         (Some(draws), None) => {
+            if fixed != (Fixed { properties: fixed.properties.clone(), ..Fixed::default() }) {
+                messages.say(
+                    "the draws sample the start, the heated share and the fire; what --set says of them holds for the medians",
+                );
+            }
             let (assessment, summaries) = model.assess_with_draws(&boulder, &covering);
             let around = Around { placed, trails: trails.as_deref(), terrain: terrain.as_ref() };
             let standing = args.id.is_some().then(|| standing(&model, &boulder, &covering, &summaries, around));
@@ -161,6 +167,14 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
         let deepest_m = probe_picture::deepest_m(&history, &median, body.convex_radius_m());
         let depths = probe_plot::plot_depths(&depth_m, deepest_m);
         let fine = probe::run(table, &body, &history, &median, &depths, &[], &spall);
+        // The draws are those of the ensemble above, seen at fixed moments.
+        let bands = match (&history, &ensemble) {
+            (History::Fire(fire), Some(_)) => {
+                let moments = probe_bands::moments(fine.time_s.last().copied().unwrap_or(1.0));
+                Some(model.temperature_bands(&boulder, fire, &depth_m, &moments))
+            }
+            _ => None,
+        };
         let plot = ProbePlot {
             subject: &subject,
             probe: &fine,
@@ -174,6 +188,7 @@ pub fn run(args: &ProbeArgs, messages: &Messages) -> Result<Exit, Stop> {
             ),
             slab: probe_picture::strength(table, Property::TensileStrength, fine.outcome.strength_pa, &all_fixed),
             ensemble: ensemble.as_ref(),
+            bands: bands.as_ref(),
         };
         probe_picture::write(path, &plot, args.plot_width_px)?;
     }

@@ -1,7 +1,8 @@
 //! A GeoPackage (OGC 12-128r19, version 1.4): burns, boulders and trails in one file.
 //!
-//! - **Layers.** `burns` (MultiPolygon), `boulders` (Point, the standpoint; with height where one is recorded), `trails`
-//!   (LineString, heights kept), WGS 84. A record without a usable place has no geometry; it is listed all the same.
+//! - **Layers.** `burns` (MultiPolygon), `boulders` (points, and polygons where footprints were recorded; the layer is
+//!   declared Point without a footprint and Geometry with one), `trails` (LineString), heights kept, WGS 84. A refused
+//!   record stands at its first corner; without a usable place it has no geometry and is listed all the same.
 //! - **Columns.** Input properties first, typed by what they hold, then the result fields of the registry, `NULL` where
 //!   not computed. SQLite compares column names without case; where an input name meets a result field or another column,
 //!   the input's goes by `input_<name>`. Beyond [`INPUT_COLUMNS_MAX`] names the rest goes into one column of JSON.
@@ -11,6 +12,7 @@
 
 use std::path::Path;
 
+use geojson::GeometryValue;
 use jiff::civil::Date;
 use rusqlite::{Connection, ToSql, Transaction, params, params_from_iter};
 
@@ -93,14 +95,15 @@ pub fn write_geopackage(
         fields: BURN_FIELDS,
     };
     layer.write(&write, head, burns, |r| &r.properties, |r| Some(Shape::Areas(&r.burn.area)))?;
+    let footprints = boulders.iter().any(|r| matches!(place(r), Some(Shape::Footprint(_))));
     let layer = Layer {
         name: "boulders",
         title: "Boulders: spall thickness and rockfall-source likelihood",
-        geometry: "POINT",
+        geometry: if footprints { "GEOMETRY" } else { "POINT" },
         heights: true,
         fields: BOULDER_FIELDS,
     };
-    layer.write(&write, head, boulders, |r| &r.feature.properties, standpoint)?;
+    layer.write(&write, head, boulders, |r| &r.feature.properties, place)?;
     if let Some(trails) = trails {
         let layer = Layer {
             name: "trails",
@@ -115,8 +118,18 @@ pub fn write_geopackage(
     Ok(())
 }
 
-/// Where a boulder stands; nothing for a record whose place is not on the globe.
-fn standpoint(result: &BoulderResult) -> Option<Shape<'_>> {
+/// A boulder's footprint where one was accepted, else where it stands; nothing for a place that is not on the globe.
+fn place(result: &BoulderResult) -> Option<Shape<'_>> {
+    if result.feature.boulder.is_ok() {
+        match result.feature.geometry.as_ref().map(|g| &g.value) {
+            Some(GeometryValue::Polygon { coordinates }) => return Some(Shape::Footprint(coordinates)),
+            // Several parts are refused: a boulder stands in one place.
+            Some(GeometryValue::MultiPolygon { coordinates }) if coordinates.len() == 1 => {
+                return Some(Shape::Footprint(&coordinates[0]));
+            }
+            _ => {}
+        }
+    }
     let (lon, lat) = result.place_deg()?;
     let height = result.feature.boulder.as_ref().ok().and_then(|b| b.position.height_m);
     (lon.abs() <= 180.0 && lat.abs() <= 90.0).then_some(Shape::Point(lon, lat, height))

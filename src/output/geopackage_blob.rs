@@ -1,6 +1,7 @@
 //! Geometries as GeoPackage blobs: the header of the standard (2.1.3), then ISO well-known binary, little-endian.
 
 use geo::{LineString, MultiPolygon};
+use geojson::Position as Corner;
 
 use crate::site::Position;
 
@@ -11,6 +12,8 @@ pub(super) const SRS_ID: i32 = 4326;
 pub(super) enum Shape<'a> {
     /// Longitude, latitude, height.
     Point(f64, f64, Option<f64>),
+    /// A footprint as it came: rings of closed corners; it has heights when each corner has one.
+    Footprint(&'a [Vec<Corner>]),
     /// A line; it has heights when each of its points has one.
     Line(&'a [Position]),
     /// Areas.
@@ -41,8 +44,13 @@ impl Extent {
         }
     }
 
-    fn of(points: impl Iterator<Item = (f64, f64)>) -> Extent {
-        points.fold(Extent::NOTHING, |e, (x, y)| e.with(Extent { min_x: x, max_x: x, min_y: y, max_y: y }))
+    /// The box of all points, or of nothing where a number is not finite.
+    fn of(mut points: impl Iterator<Item = (f64, f64)>) -> Extent {
+        let whole = points.try_fold(Extent::NOTHING, |e, (x, y)| {
+            let finite = x.is_finite() && y.is_finite();
+            finite.then(|| e.with(Extent { min_x: x, max_x: x, min_y: y, max_y: y }))
+        });
+        whole.unwrap_or(Extent::NOTHING)
     }
 
     /// Whether it holds anything.
@@ -71,10 +79,11 @@ const FLAGS_BOX: u8 = 0b0000_0011;
 pub(super) fn encode(shape: &Shape<'_>) -> Option<Blob> {
     let extent = match shape {
         Shape::Point(x, y, _) => Extent::of([(*x, *y)].into_iter()),
+        Shape::Footprint(rings) => Extent::of(rings.iter().flatten().map(|c| (number(c, 0), number(c, 1)))),
         Shape::Line(points) => Extent::of(points.iter().map(|p| (p.lon_deg, p.lat_deg))),
         Shape::Areas(areas) => Extent::of(areas.iter().flat_map(|a| a.exterior().coords().map(|c| (c.x, c.y)))),
     };
-    if !extent.some() || ![extent.min_x, extent.max_x, extent.min_y, extent.max_y].iter().all(|v| v.is_finite()) {
+    if !extent.some() {
         return None;
     }
     let mut bytes = b"GP\0".to_vec();
@@ -94,6 +103,16 @@ pub(super) fn encode(shape: &Shape<'_>) -> Option<Blob> {
         Shape::Point(x, y, Some(height)) => {
             kind(&mut bytes, POINT + WITH_HEIGHTS);
             numbers(&mut bytes, &[*x, *y, *height]);
+        }
+        Shape::Footprint(rings) => {
+            let heights = rings.iter().flatten().all(|c| number(c, 2).is_finite());
+            kind(&mut bytes, POLYGON + if heights { WITH_HEIGHTS } else { 0 });
+            count(&mut bytes, rings.len());
+            for ring in *rings {
+                count(&mut bytes, ring.len());
+                let dimensions = if heights { 3 } else { 2 };
+                ring.iter().for_each(|c| numbers(&mut bytes, &c.as_slice()[..dimensions]));
+            }
         }
         Shape::Line(points) => {
             let heights = points.iter().all(|p| p.height_m.is_some());
@@ -118,6 +137,11 @@ pub(super) fn encode(shape: &Shape<'_>) -> Option<Blob> {
         }
     }
     Some(Blob { bytes, extent })
+}
+
+/// One number of a position; not a number where it has none.
+fn number(corner: &Corner, i: usize) -> f64 {
+    corner.as_slice().get(i).copied().unwrap_or(f64::NAN)
 }
 
 fn kind(bytes: &mut Vec<u8>, kind: u32) {
@@ -151,6 +175,27 @@ mod tests {
         assert_eq!(blob.bytes, expected);
         assert_eq!(encode(&Shape::Point(1.0, -2.0, Some(7.0))).expect("a point").bytes[9..13], 1001_u32.to_le_bytes());
         assert!(encode(&Shape::Point(f64::NAN, 0.0, None)).is_none());
+        let line = |lons: [f64; 3]| lons.map(|lon_deg| Position { lon_deg, lat_deg: 0.0, height_m: None });
+        assert!(encode(&Shape::Line(&line([0.0, 1.0, 2.0]))).is_some());
+        for at in 0..3 {
+            let mut lons = [0.0, 1.0, 2.0];
+            lons[at] = f64::NAN;
+            assert!(encode(&Shape::Line(&line(lons))).is_none(), "not a number at {at}");
+        }
         assert!(encode(&Shape::Line(&[])).is_none());
+    }
+
+    #[test]
+    fn a_footprint_is_a_polygon_with_heights_where_every_corner_has_one() {
+        let corner = |x: f64, y: f64| Corner::from([x, y, 9.0]);
+        let mut rings = vec![vec![corner(0.0, 0.0), corner(1.0, 0.0), corner(0.0, 1.0), corner(0.0, 0.0)]];
+        // By hand: header of 8 bytes, box of 32, then 01, type 1003, one ring of four corners with three numbers each.
+        let blob = encode(&Shape::Footprint(&rings)).expect("a polygon");
+        assert_eq!(blob.bytes.len(), 8 + 32 + 5 + 4 + 4 + 4 * 24);
+        assert_eq!(blob.bytes[41..45], 1003_u32.to_le_bytes());
+        rings[0][2] = Corner::from([0.0, 1.0]);
+        let blob = encode(&Shape::Footprint(&rings)).expect("a polygon");
+        assert_eq!(blob.bytes.len(), 8 + 32 + 5 + 4 + 4 + 4 * 16);
+        assert_eq!(blob.bytes[41..45], 3_u32.to_le_bytes());
     }
 }

@@ -129,6 +129,24 @@ pub struct Panel {
     x: Axis,
     y: Axis,
     svg: String,
+    /// Boxes of the labels so far: left, top, right, bottom.
+    taken: Vec<[f64; 4]>,
+}
+
+/// Width of a text over its size times its letters, on average in the built-in font (measured on its own labels).
+const LETTER_WIDTH: f64 = 0.6;
+/// Air between two labels.
+const LABEL_AIR: f64 = 2.0;
+
+/// Box of a text: left, top, right, bottom.
+fn text_box(x: f64, y: f64, anchor: Anchor, size: f64, text: &str) -> [f64; 4] {
+    let width = LETTER_WIDTH * size * text.chars().count() as f64;
+    let left = match anchor {
+        Anchor::Start => x,
+        Anchor::Middle => x - 0.5 * width,
+        Anchor::End => x - width,
+    };
+    [left, y - 0.8 * size, left + width, y + 0.2 * size]
 }
 
 impl Panel {
@@ -140,7 +158,7 @@ impl Panel {
         x: Axis,
         y: Axis,
     ) -> Panel {
-        let mut panel = Panel { number, left, top, width, height, x, y, svg: String::new() };
+        let mut panel = Panel { number, left, top, width, height, x, y, svg: String::new(), taken: Vec::new() };
         panel.frame(title);
         panel
     }
@@ -227,6 +245,56 @@ impl Panel {
              fill=\"#111111\" stroke=\"#ffffff\" stroke-width=\"3\" stroke-linejoin=\"round\" paint-order=\"stroke\">{}</text>",
             escaped(text)
         );
+    }
+
+    /// A label of size 12 at the first of these places where it lies on no other label and inside the panel; at the first
+    /// place of all where there is none. Later labels keep off it.
+    pub fn label(&mut self, places: &[(f64, f64, Anchor)], weight: &str, text: &str) {
+        const SIZE: f64 = 12.0;
+        let (left, top, right, bottom) = self.edges();
+        let free = |place: &&(f64, f64, Anchor)| {
+            let b = text_box(place.0, place.1, place.2, SIZE, text);
+            let inside = b[0] >= left && b[2] <= right && b[1] >= top && b[3] <= bottom;
+            inside && self.taken.iter().all(|t| b[0] >= t[2] || b[2] <= t[0] || b[1] >= t[3] || b[3] <= t[1])
+        };
+        let Some((x, y, anchor)) = places.iter().find(free).or(places.first()).copied() else { return };
+        let b = text_box(x, y, anchor, SIZE, text);
+        self.keep_free([b[0] - LABEL_AIR, b[1] - LABEL_AIR, b[2] + LABEL_AIR, b[3] + LABEL_AIR]);
+        self.text(x, y, anchor, SIZE, weight, text);
+    }
+
+    /// Keeps labels out of a box: left, top, right, bottom.
+    pub fn keep_free(&mut self, area: [f64; 4]) {
+        self.taken.push(area);
+    }
+
+    /// A light plate for a key: left, top, right, bottom. What was drawn shines through; labels keep off it.
+    pub fn plate(&mut self, [left, top, right, bottom]: [f64; 4]) {
+        let _ = writeln!(
+            self.svg,
+            "<rect x=\"{left:.1}\" y=\"{top:.1}\" width=\"{:.1}\" height=\"{:.1}\" fill=\"#ffffff\" fill-opacity=\"0.88\"/>",
+            right - left,
+            bottom - top
+        );
+        self.keep_free([left, top, right, bottom]);
+    }
+
+    /// The area between two curves over the same places: `x`, low, high. The pieces are parted where an area has no value.
+    pub fn area(&mut self, points: &[Option<(f64, f64, f64)>]) {
+        for piece in points.split(Option::is_none).filter(|p| p.len() > 1) {
+            let mut path = String::new();
+            let forth = piece.iter().flatten().map(|p| (p.0, p.2));
+            let back = piece.iter().rev().flatten().map(|p| (p.0, p.1));
+            for (i, (x, y)) in forth.chain(back).enumerate() {
+                let _ = write!(path, "{}{:.1} {:.1}", if i == 0 { 'M' } else { 'L' }, self.at_x(x), self.at_y(y));
+            }
+            let _ = writeln!(
+                self.svg,
+                "<path d=\"{path}z\" clip-path=\"url(#panel{})\" fill=\"#000000\" fill-opacity=\"0.16\" \
+                 stroke=\"#777777\" stroke-width=\"0.8\"/>",
+                self.number
+            );
+        }
     }
 
     /// A curve through points in the units of the axes.
@@ -328,6 +396,30 @@ mod tests {
     #[test]
     fn text_of_the_user_stays_text() {
         assert_eq!(escaped("<b id=\"x\">&'\u{7}"), "&lt;b id=&quot;x&quot;&gt;&amp;&#39; ");
+    }
+
+    #[test]
+    fn labels_keep_off_one_another() {
+        let axis = |high| Axis::up_to(high, "");
+        let mut panel = Panel::new(0, (100.0, 50.0, 400.0, 200.0), "", axis(10.0), axis(4.0));
+        let places = [(120.0, 100.0, Anchor::Start), (120.0, 130.0, Anchor::Start)];
+        panel.label(&places, "normal", "flake 1 mm");
+        panel.label(&places, "normal", "slab 14 mm");
+        let svg = panel.finish();
+        let height = |words: &str| {
+            let line = svg.lines().find(|l| l.contains(words)).expect("the label");
+            line.split("y=\"").nth(1).and_then(|rest| rest.split('"').next()).expect("its height").to_owned()
+        };
+        assert_eq!((height("flake"), height("slab")), ("100.0".to_owned(), "130.0".to_owned()));
+    }
+
+    #[test]
+    fn an_area_is_parted_where_it_has_no_value() {
+        let axis = |high| Axis::up_to(high, "");
+        let mut panel = Panel::new(0, (100.0, 50.0, 400.0, 200.0), "", axis(10.0), axis(4.0));
+        let at = |x: f64| Some((x, 1.0, 2.0));
+        panel.area(&[at(0.0), at(1.0), None, at(2.0), at(3.0), None, at(4.0)]);
+        assert_eq!(panel.finish().matches("fill-opacity=\"0.16\"").count(), 2, "a single moment has no area");
     }
 
     #[test]

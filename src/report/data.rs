@@ -1,12 +1,15 @@
-//! The page's data as one JSON text: rows by the registries, geometry in metres, profiles.
+//! The page's data as one JSON text: columns by the registries, geometry in metres, profiles.
 //!
-//! Columns come from [`INSPECTION_COLUMNS`] and [`BOULDER_FIELDS`], [`BURN_FIELDS`] and [`TRAIL_FIELDS`]. Text cells are
-//! places in one list of texts; null stays null. Lengths have one decimal, outlines are simplified to [`OUTLINE_M`].
+//! Columns come from [`INSPECTION_COLUMNS`] and [`BOULDER_FIELDS`], [`BURN_FIELDS`] and [`TRAIL_FIELDS`], one list of values
+//! each. Text cells are places in one list of texts; null stays null. What was recorded stands once a set of names: the
+//! names, then a list of values a record. Outlines are simplified to [`OUTLINE_M`]; a boulder's place is given to
+//! [`PLACE_M`], and its longitude and latitude stand beside it only where it has no place on the map.
 
+use std::borrow::Cow;
 use std::collections::{BTreeMap, HashMap};
 use std::io::Write;
 
-use geo::{Coord, LineString, Simplify};
+use geo::{BooleanOps, Coord, LineString, MapCoords, MultiPolygon, Polygon, Simplify};
 use serde::Serialize;
 
 use super::classes::{PROPOSAL_CLASSES, SOURCE_CLASSES, weight};
@@ -15,6 +18,7 @@ use super::label::label;
 use super::page::PageInputs;
 use crate::fire::exposure::ExposureClass;
 use crate::flag::Flag;
+use crate::input::Properties;
 use crate::output::fields::{Field, Value};
 use crate::output::inspection::INSPECTION_COLUMNS;
 use crate::output::{BOULDER_FIELDS, BURN_FIELDS, BoulderResult, TRAIL_FIELDS};
@@ -26,8 +30,14 @@ use crate::units::SECONDS_PER_MINUTE;
 pub const DETAILED_MAX: usize = 20_000;
 /// Boulders with a row on the page.
 pub const LISTED_MAX: usize = 200_000;
+/// Boulders of a stretch in the order of their contributions; the others stand after them by rank, as steps from one to
+/// the next.
+pub const ORDERED_OF_STRETCH: usize = 30;
 /// Largest error of a simplified outline or trail, m.
 pub const OUTLINE_M: f64 = 0.5;
+
+/// Places of boulders are rounded to this, m: the sixth decimal of a degree.
+pub const PLACE_M: f64 = 0.01;
 
 /// The list of texts that text cells point into.
 #[derive(Default)]
@@ -56,10 +66,9 @@ impl Texts {
         }
     }
 
-    fn rows<'r, R: 'r>(&mut self, out: &mut Vec<u8>, rows: impl Iterator<Item = (&'r R, usize)>, fields: &[Field<R>]) {
-        list(out, rows, |out, (row, columns)| {
-            list(out, fields.iter().take(columns), |out, field| self.cell(out, field, row))
-        });
+    /// One list of values a field.
+    fn columns<R>(&mut self, out: &mut Vec<u8>, rows: &[R], fields: &[Field<R>]) {
+        list(out, fields.iter(), |out, field| list(out, rows.iter(), |out, row| self.cell(out, field, row)));
     }
 }
 
@@ -244,36 +253,94 @@ fn boulders(
     let places: Vec<Option<(f64, f64)>> =
         rows().map(|r| r.place_deg().and_then(|(lon, lat)| frame.metres(lon, lat))).collect();
     out.push(b'{');
+    key(out, "count");
+    json(out, &listed.len());
     key(out, "fields");
     json(out, &heads(&fields));
-    key(out, "rows");
-    texts.rows(out, rows().enumerate().map(|(i, r)| (r, if i < detailed { fields.len() } else { short })), &fields);
+    key(out, "columns");
+    list(out, fields.iter().enumerate(), |out, (i, field)| {
+        let kept = if i < short { listed.len() } else { detailed };
+        let degrees = matches!(field.name, "longitude" | "latitude");
+        list(out, rows().zip(&places).take(kept), |out, (row, place)| match place {
+            // The page has it from the place on the map.
+            Some(_) if degrees => out.extend_from_slice(b"null"),
+            _ => texts.cell(out, field, row),
+        });
+    });
     key(out, "x");
-    json(out, &places.iter().map(|p| p.map(|(x, _)| tenth(x))).collect::<Vec<_>>());
+    list(out, places.iter(), |out, p| number(out, p.map(|(x, _)| x)));
     key(out, "y");
-    json(out, &places.iter().map(|p| p.map(|(_, y)| tenth(y))).collect::<Vec<_>>());
+    list(out, places.iter(), |out, p| number(out, p.map(|(_, y)| y)));
     key(out, "within");
     list(out, rows(), |out, r| json(out, &r.within));
     key(out, "residence");
     list(out, rows(), |out, r| json(out, &residence(r, inputs).map(|(min, from)| (tenth(min * 100.0) / 100.0, from))));
     key(out, "input");
-    list(out, rows().take(detailed), |out, r| out.extend_from_slice(r.feature.properties.as_json().as_bytes()));
+    recorded(out, &rows().take(detailed).map(|r| &r.feature.properties).collect::<Vec<_>>());
     out.push(b'}');
+}
+
+/// A length to [`PLACE_M`], or null.
+fn number(out: &mut Vec<u8>, x: Option<f64>) {
+    match x {
+        Some(x) => write!(out, "{}", format!("{:.2}", x + 0.0).trim_end_matches('0').trim_end_matches('.')),
+        None => write!(out, "null"),
+    }
+    .expect("memory takes it");
+}
+
+/// What records hold: every set of names once, then for each record the place of its set and its values as they came.
+fn recorded(out: &mut Vec<u8>, records: &[&Properties]) {
+    let mut sets: Vec<Vec<String>> = Vec::new();
+    let mut places: HashMap<Vec<String>, usize> = HashMap::new();
+    let entries: Vec<_> = records.iter().map(|r| r.entries()).collect();
+    out.push(b'{');
+    key(out, "values");
+    list(out, entries.iter(), |out, entries| {
+        let names: Vec<String> = entries.iter().map(|(name, _)| name.clone().into_owned()).collect();
+        let place = *places.entry(names.clone()).or_insert_with(|| {
+            sets.push(names);
+            sets.len() - 1
+        });
+        write!(out, "[{place}").expect("memory takes it");
+        for (_, value) in entries {
+            out.push(b',');
+            out.extend_from_slice(value.get().as_bytes());
+        }
+        out.push(b']');
+    });
+    key(out, "names");
+    json(out, &sets);
+    out.push(b'}');
+}
+
+/// An area without the cut along the antimeridian, longitudes from 0 to 360 where it was cut.
+fn whole(area: &MultiPolygon<f64>) -> Cow<'_, MultiPolygon<f64>> {
+    let cut = |p: &Polygon<f64>| p.exterior().coords().any(|c| c.x.abs() == 180.0);
+    if area.0.iter().filter(|p| cut(p)).count() < 2 {
+        return Cow::Borrowed(area);
+    }
+    let east = area.map_coords(|c| Coord { x: if c.x < 0.0 { c.x + 360.0 } else { c.x }, y: c.y });
+    let parts = east.0.iter().map(|p| MultiPolygon::new(vec![p.clone()]));
+    Cow::Owned(parts.reduce(|a, b| a.union(&b)).unwrap_or(east))
 }
 
 fn burns(out: &mut Vec<u8>, texts: &mut Texts, inputs: &PageInputs, frame: &Frame) {
     out.push(b'{');
     key(out, "fields");
     json(out, &heads(BURN_FIELDS));
-    key(out, "rows");
-    texts.rows(out, inputs.burns.iter().map(|b| (b, usize::MAX)), BURN_FIELDS);
+    key(out, "count");
+    json(out, &inputs.burns.len());
+    key(out, "columns");
+    texts.columns(out, inputs.burns, BURN_FIELDS);
     key(out, "names");
     json(out, &inputs.burns.iter().map(|b| b.burn.id.as_str()).collect::<Vec<_>>());
     key(out, "input");
-    list(out, inputs.burns.iter(), |out, b| out.extend_from_slice(b.properties.as_json().as_bytes()));
+    recorded(out, &inputs.burns.iter().map(|b| &b.properties).collect::<Vec<_>>());
     key(out, "rings");
     list(out, inputs.burns.iter(), |out, b| {
-        let rings = b.burn.area.0.iter().flat_map(|p| std::iter::once(p.exterior()).chain(p.interiors()));
+        let area = whole(&b.burn.area);
+        let rings = area.0.iter().flat_map(|p| std::iter::once(p.exterior()).chain(p.interiors()));
         list(out, rings, |out, ring| flat(out, frame, ring.coords().map(|c| (c.x, c.y))));
     });
     out.push(b'}');
@@ -282,14 +349,23 @@ fn burns(out: &mut Vec<u8>, texts: &mut Texts, inputs: &PageInputs, frame: &Fram
 fn trails(out: &mut Vec<u8>, texts: &mut Texts, inputs: &PageInputs, frame: &Frame, listed: &[usize]) {
     let places: HashMap<&str, usize> =
         listed.iter().enumerate().map(|(row, i)| (inputs.results[*i].id(), row)).collect();
+    // The names of boulders stand as their places in the list below.
+    let fields: Vec<_> = TRAIL_FIELDS.iter().filter(|f| f.name != "boulder_ids").copied().collect();
     out.push(b'{');
     key(out, "fields");
-    json(out, &heads(TRAIL_FIELDS));
-    key(out, "rows");
-    texts.rows(out, inputs.rows.iter().map(|r| (r, usize::MAX)), TRAIL_FIELDS);
+    json(out, &heads(&fields));
+    key(out, "count");
+    json(out, &inputs.rows.len());
+    key(out, "columns");
+    texts.columns(out, inputs.rows, &fields);
     key(out, "boulders");
     list(out, inputs.rows.iter(), |out, r| {
-        json(out, &r.result.boulder_ids.iter().filter_map(|id| places.get(id.as_str())).collect::<Vec<_>>());
+        let named: Vec<usize> = r.result.boulder_ids.iter().filter_map(|id| places.get(id.as_str()).copied()).collect();
+        let (first, rest) = named.split_at(named.len().min(ORDERED_OF_STRETCH));
+        let mut rest = rest.to_vec();
+        rest.sort_unstable();
+        let steps: Vec<usize> = rest.iter().scan(0, |before, at| Some(at - std::mem::replace(before, *at))).collect();
+        json(out, &(first, steps));
     });
     key(out, "lines");
     list(out, inputs.rows.iter(), |out, r| {

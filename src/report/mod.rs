@@ -9,6 +9,7 @@
 //! looks     their marks and dashes in a map program
 //! sld       styles of the layers (OGC)
 //! chart, probe_plot, picture   one boulder through time and depth as SVG and PNG
+//! probe_bands  the draws behind it
 //! label     a field's name in words
 //! profiles  temperature and stress through depth of the first boulders
 //! ```
@@ -29,6 +30,7 @@ pub mod label;
 pub mod looks;
 pub mod page;
 pub mod picture;
+pub mod probe_bands;
 pub mod probe_plot;
 pub mod profiles;
 pub mod sld;

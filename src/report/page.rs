@@ -1,8 +1,12 @@
 //! The document: what goes in, the template, the parts put together.
 
 use askama::Template;
+use base64::Engine;
+use base64::engine::general_purpose::STANDARD as BASE64;
 use jiff::civil::Date;
+use miniz_oxide::deflate::compress_to_vec;
 use serde::Serialize;
+use sha2::{Digest, Sha256};
 
 use super::classes::{SOURCE_CLASSES, SourceClass};
 use super::data::{DETAILED_MAX, LISTED_MAX, data};
@@ -15,6 +19,11 @@ use crate::rock::Catalogue;
 
 /// Findings that the page lists; the run record holds all.
 const FINDINGS_LISTED: usize = 200;
+
+/// Data up to this length stand as plain text, bytes; beyond it they are packed (deflate, RFC 1951, as base64).
+const PLAIN_MAX: usize = 2_000_000;
+/// Effort of the packing, 0 to 10: beyond this a page grows smaller by a few percent and takes twice as long.
+const LEVEL: u8 = 6;
 
 const STYLE: &str = include_str!("templates/page.css");
 const SCRIPT: [&str; 7] = [
@@ -77,17 +86,19 @@ pub struct ProfileEvent {
 #[derive(Template)]
 #[template(path = "page.html", config = "src/report/askama.toml")]
 struct Document<'a> {
+    policy: String,
     css: &'a str,
     script: &'a str,
     data: &'a str,
+    packed: bool,
     program_version: &'a str,
     catalogue_version: &'a str,
     valid_until: String,
     horizon_days: String,
-    records: u64,
-    assessed: u64,
-    not_assessed: u64,
-    with_source: u64,
+    records: String,
+    assessed: String,
+    not_assessed: String,
+    with_source: String,
     reasons: Vec<ReasonCount>,
     burn_count: usize,
     trail_count: usize,
@@ -116,23 +127,28 @@ struct Document<'a> {
 pub fn page(inputs: &PageInputs) -> String {
     let record = inputs.record;
     let frame = frame(inputs);
-    let script: String = SCRIPT.join("\n");
+    // A function of its own, which may wait for the data.
+    let script = format!("(async function () {{\n\"use strict\";\n{}\n}})();", SCRIPT.join("\n"));
     let data = data(inputs, &frame, &Catalogue::embedded());
+    let packed = data.len() > PLAIN_MAX;
+    let data = if packed { BASE64.encode(compress_to_vec(data.as_bytes(), LEVEL)) } else { data };
     let (unknown_stretches, unknown_metres) = summary::unknown_stretches(inputs.rows);
     let mut trails: Vec<&str> = inputs.rows.iter().map(|r| r.trail_id.as_str()).collect();
     trails.dedup();
     let document = Document {
+        policy: policy(&script),
         css: STYLE,
         script: &script,
         data: &data,
+        packed,
         program_version: record.program_version,
         catalogue_version: record.catalogue_version,
         valid_until: inputs.valid_until.to_string(),
         horizon_days: record.settings.horizon_days.to_string(),
-        records: record.counts.records,
-        assessed: record.counts.assessed,
-        not_assessed: record.counts.not_assessed,
-        with_source: record.counts.with_source,
+        records: summary::count(record.counts.records),
+        assessed: summary::count(record.counts.assessed),
+        not_assessed: summary::count(record.counts.not_assessed),
+        with_source: summary::count(record.counts.with_source),
         reasons: summary::reasons(&record.counts),
         burn_count: inputs.burns.len(),
         trail_count: trails.len(),
@@ -154,6 +170,16 @@ pub fn page(inputs: &PageInputs) -> String {
         finding_count: record.diagnostics.len(),
     };
     document.render().expect("text renders into memory")
+}
+
+/// What the page may do: its own style and script, known by their hashes, and nothing else.
+fn policy(script: &str) -> String {
+    let hash = |text: &str| format!("'sha256-{}'", BASE64.encode(Sha256::digest(text)));
+    format!(
+        "default-src 'none'; style-src {}; script-src {}; form-action 'none'; base-uri 'none'",
+        hash(STYLE),
+        hash(script)
+    )
 }
 
 /// The plane about the burns, or about the boulders without a burn.

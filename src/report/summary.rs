@@ -56,7 +56,7 @@ pub struct NamedBoulder {
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct ReasonCount {
     /// How many.
-    pub count: u64,
+    pub count: String,
     /// The reason in words.
     pub words: String,
 }
@@ -74,10 +74,22 @@ pub fn proposal_metres(rows: &[SegmentRow]) -> Vec<ProposalMetres> {
         .collect()
 }
 
-/// A length in whole metres with thin groups.
+/// A length in whole metres, in groups of three digits.
 fn whole(metres: f64) -> String {
     // An empty sum is minus zero.
-    let digits = format!("{:.0}", metres + 0.0);
+    grouped(&format!("{:.0}", metres + 0.0))
+}
+
+/// A count in groups of three digits.
+///
+/// ```
+/// assert_eq!(spallcast::report::summary::count(1_234_567), "1,234,567");
+/// ```
+pub fn count(count: u64) -> String {
+    grouped(&count.to_string())
+}
+
+fn grouped(digits: &str) -> String {
     let mut grouped = String::new();
     for (i, c) in digits.chars().enumerate() {
         if i > 0 && (digits.len() - i).is_multiple_of(3) {
@@ -179,9 +191,7 @@ pub fn first_boulders(results: &[BoulderResult], order: &[usize]) -> Vec<NamedBo
 
 /// Why boulders were not assessed, the most frequent reason first.
 pub fn reasons(counts: &RunCounts) -> Vec<ReasonCount> {
-    let mut reasons: Vec<ReasonCount> = (counts.not_assessed_by_reason.iter())
-        .map(|(code, count)| ReasonCount { count: *count, words: code.replace('_', " ") })
-        .collect();
-    reasons.sort_by(|a, b| b.count.cmp(&a.count).then(a.words.cmp(&b.words)));
-    reasons
+    let mut reasons: Vec<(&&str, &u64)> = counts.not_assessed_by_reason.iter().collect();
+    reasons.sort_by(|a, b| b.1.cmp(a.1).then(a.0.cmp(b.0)));
+    reasons.into_iter().map(|(code, n)| ReasonCount { count: count(*n), words: code.replace('_', " ") }).collect()
 }

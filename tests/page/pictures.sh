@@ -12,5 +12,5 @@ chromium --headless=new --no-sandbox --disable-gpu --no-first-run --disable-back
   --disable-component-update --disable-sync --hide-scrollbars --user-data-dir="$work/profile" \
   --window-size=1200,1500 --screenshot="$work/page.png" "file://$work/demo/results/report.html" 2>/dev/null
 cp "$work/page.png" docs/pictures/page.png
-"$program" probe --rock granite --diameter-m 1.5 --exposure crown --plot docs/pictures/probe.png --plot-width-px 1200 \
+"$program" probe --rock granite --diameter-m 1.5 --exposure crown --draws 512 --plot docs/pictures/probe.png --plot-width-px 1200 \
   >/dev/null

@@ -1,8 +1,22 @@
 // Data access, formatting, and the making of elements. Text enters the page through text nodes and attributes only.
-const DATA = JSON.parse(document.getElementById("data").textContent);
+const by_id = (id) => document.getElementById(id);
+const DATA = await read_data(by_id("data"));
+if (!DATA) return;
 const WORDS = DATA.strings;
 const SVG_SPACE = document.querySelector("svg").namespaceURI;
-const by_id = (id) => document.getElementById(id);
+
+// The data stand as JSON, or packed: deflate in base64. A viewer that cannot unpack says so and shows what it has.
+async function read_data(home) {
+  if (!home.dataset.packed) return JSON.parse(home.textContent);
+  try {
+    const bytes = Uint8Array.from(atob(home.textContent), (c) => c.charCodeAt(0));
+    const unpacked = new Blob([bytes]).stream().pipeThrough(new DecompressionStream(home.dataset.packed));
+    return JSON.parse(await new Response(unpacked).text());
+  } catch (fault) {
+    by_id("stuck").hidden = false;
+    return null;
+  }
+}
 
 for (const set of [DATA.boulders, DATA.burns, DATA.trails]) {
   set.at = new Map(set.fields.map((f, i) => [f.name, i]));
@@ -11,9 +25,23 @@ for (const set of [DATA.boulders, DATA.burns, DATA.trails]) {
 // A cell: undefined when this page leaves it out, null when it was not computed or not recorded.
 function cell(set, row, name) {
   const k = set.at.get(name);
-  const raw = set.rows[row][k];
-  if (raw === undefined || raw === null) return raw;
+  const raw = set.columns[k][row];
+  if (raw === undefined) return raw;
+  // A boulder on the map has its degrees from its place there.
+  if (raw === null) return set === DATA.boulders && (name === "longitude" || name === "latitude") ? degrees_of(row, name) : raw;
   return set.fields[k].kind === "string" ? WORDS[raw] : raw;
+}
+const DEGREES = [];
+function degrees_of(row, name) {
+  if (DATA.boulders.x[row] === null) return null;
+  const place = (DEGREES[row] ??= degrees_at(DATA.boulders.x[row], DATA.boulders.y[row]));
+  return name === "latitude" ? place.lat : place.lon;
+}
+const rows_of = (set) => Array.from({ length: set.count }, (_, row) => row);
+// What a record holds: names and values in their order; undefined when this page leaves it out.
+function recorded_of(set, row) {
+  const record = set.input.values[row];
+  return record && set.input.names[record[0]].map((name, i) => [name, record[i + 1]]);
 }
 const boulder = (row, name) => cell(DATA.boulders, row, name);
 const stretch = (row, name) => cell(DATA.trails, row, name);
@@ -118,8 +146,13 @@ function select(kind, row, from) {
   STATE.from = from;
   tell("selected");
 }
+// The boulders of a stretch: the first ones by contribution, then the others, given as steps from rank to rank.
+DATA.trails.boulders = DATA.trails.boulders.map(([first, steps]) => {
+  let at = 0;
+  return [...first, ...steps.map((step) => (at += step))];
+});
 // Which stretches name a boulder, and the heaviest proposal among them.
-const NAMED_BY = DATA.boulders.rows.map(() => []);
+const NAMED_BY = rows_of(DATA.boulders).map(() => []);
 DATA.trails.boulders.forEach((rows, at) => rows.forEach((row) => NAMED_BY[row].push(at)));
 function heaviest(row) {
   let best = null;

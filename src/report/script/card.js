@@ -11,9 +11,8 @@ function figures(set, row, skip) {
   });
   return list;
 }
-function recorded(row_input) {
-  if (!row_input) return null;
-  const entries = Object.entries(row_input);
+function recorded(entries) {
+  if (!entries) return null;
   if (!entries.length) return h("p", {}, "Nothing was recorded but its place.");
   return h("dl", { class: "figures plain" }, entries.map(([name, value]) =>
     h("div", {}, h("dt", {}, name), h("dd", {}, typeof value === "string" ? value : JSON.stringify(value)))));
@@ -52,7 +51,7 @@ function boulder_card(row) {
     h("h4", {}, "Flags"),
     flags.length ? h("dl", { class: "figures plain" }, flags.map((f) => h("div", {}, h("dt", {}, f.replaceAll("_", " ")), h("dd", {}, FLAGS[f] || "")))) : h("p", {}, boulder(row, "flags") === undefined ? LEFT_OUT : "None."),
     h("details", { open: true }, h("summary", {}, "All figures"), figures(DATA.boulders, row, ["rank", "boulder_id", "reason", "flags"])),
-    h("details", {}, h("summary", {}, "As recorded"), recorded(DATA.boulders.input[row]) ?? h("p", {}, LEFT_OUT)),
+    h("details", {}, h("summary", {}, "As recorded"), recorded(recorded_of(DATA.boulders, row)) ?? h("p", {}, LEFT_OUT)),
     h("details", {}, h("summary", {}, "Sources"), sources(row)),
   ];
 }
@@ -68,7 +67,7 @@ function stretch_card(at) {
     names.length ? h("ul", { class: "sources inline" }, names.slice(0, 30).map((row) => h("li", {},
       h("button", { type: "button", class: "link", onclick: () => select("boulder", row, "card") }, boulder_name(row)), boulder(row, "status") === "assessed" ? "" : " (not assessed)")),
     names.length > 30 ? h("li", {}, `and ${names.length - 30} more`) : null) : h("p", {}, "None recorded."),
-    figures(DATA.trails, at, ["reason", "reopens_when", "boulder_ids", "name", "decided_by"]),
+    figures(DATA.trails, at, ["reason", "reopens_when", "name", "decided_by"]),
     h("p", { class: "sign" }, "Decided by: ", h("span", {})),
   ];
 }
@@ -76,7 +75,7 @@ function burn_card(i) {
   return [
     h("p", { class: "kicker" }, "Burn"), h("h3", {}, DATA.burns.names[i]),
     figures(DATA.burns, i, []),
-    h("details", { open: true }, h("summary", {}, "As recorded"), recorded(DATA.burns.input[i])),
+    h("details", { open: true }, h("summary", {}, "As recorded"), recorded(recorded_of(DATA.burns, i))),
   ];
 }
 const CARD_HELP = [...by_id("card").childNodes];

@@ -4,7 +4,7 @@ const CHARTS = (() => {
   const frame = (height, label, wide) => s("svg", { viewBox: `0 0 ${wide || W} ${height}`, role: "img", "aria-label": label });
   const text = (x, y, words, kind, anchor) => s("text", { x, y, class: kind || "axis", "text-anchor": anchor || "middle" }, words);
   const line = (x1, y1, x2, y2, kind) => s("line", { x1, y1, x2, y2, class: kind });
-  const numbers = (name) => DATA.boulders.rows.map((_, row) => boulder(row, name)).filter((v) => typeof v === "number" && isFinite(v));
+  const numbers = (name) => rows_of(DATA.boulders).map((row) => boulder(row, name)).filter((v) => typeof v === "number" && isFinite(v));
   const quantile = (sorted, q) => { const at = q * (sorted.length - 1), i = Math.floor(at); return sorted[i] + (at - i) * ((sorted[i + 1] ?? sorted[i]) - sorted[i]); };
   const nothing = (home, words) => by_id(home).append(h("p", { class: "absent" }, words));
   function log_axis(svg, low, high, x, y, foot) {
@@ -30,7 +30,7 @@ const CHARTS = (() => {
       bins.forEach((b, k) => b && svg.append(s("rect", { x: 16 + k * step + 0.5, width: step - 1, y: base - (b / most) * 40, height: (b / most) * 40, class: "bin bin-" + i })));
       const [a, q1, m, q3, z] = [0.05, 0.25, 0.5, 0.75, 0.95].map((q) => x(quantile(f.values, q)));
       svg.append(line(a, base + 7, z, base + 7, "whisker"), s("rect", { x: q1, y: base + 2, width: Math.max(1, q3 - q1), height: 10, class: "box" }), line(m, base, m, base + 14, "median"));
-      svg.append(text(16, base - 46, `${f.words}: median ${significant(quantile(f.values, 0.5), 2)} mm over ${n} boulders`, "name", "start"));
+      svg.append(text(16, base - 46, `${f.words}: median ${significant(quantile(f.values, 0.5), 2)} mm over ${n} boulders`, "name halo", "start"));
     });
     svg.append(text(W / 2, foot + 36, "expected thickness, given that the family occurs (mm)", "axis strong"));
     const mean = (name) => { const v = numbers(name); return v.length ? percent(v.reduce((a, b) => a + b, 0) / v.length) + ` (${v.length} boulders)` : "not computed"; };
@@ -39,7 +39,7 @@ const CHARTS = (() => {
 
   function residence() {
     const home = by_id("chart-residence");
-    const rows = DATA.boulders.rows.map((_, row) => row).filter((row) => DATA.boulders.residence[row]);
+    const rows = rows_of(DATA.boulders).filter((row) => DATA.boulders.residence[row]);
     if (!rows.length) return nothing("chart-residence", "No boulder has both a fire and a likelihood.");
     const choice = h("select", { id: "residence-figure" }, [["p_spall", "likelihood of spalling"], ["p_source", "source likelihood"]].map(([v, t]) => h("option", { value: v }, t)));
     const place = h("div");
@@ -47,7 +47,7 @@ const CHARTS = (() => {
     function show() {
       const name = choice.value, all = rows.filter((row) => typeof boulder(row, name) === "number"), skip = Math.ceil(all.length / 2000);
       const svg = frame(330, choice.selectedOptions[0].textContent + " against fire residence time"), t = (row) => Math.max(0.02, DATA.boulders.residence[row][0]);
-      const low = Math.min(0.1, ...rows.map(t)), high = Math.max(10, ...rows.map(t)) * 1.3;
+      const low = rows.reduce((least, row) => Math.min(least, t(row)), 0.1), high = rows.reduce((most, row) => Math.max(most, t(row)), 10) * 1.3;
       const x = (v) => 48 + ((Math.log10(v) - Math.log10(low)) / (Math.log10(high) - Math.log10(low))) * (W - 64), y = (p) => 282 - p * 266;
       log_axis(svg, low, high, x, 16, 282);
       for (const p of [0, 0.25, 0.5, 0.75, 1]) svg.append(line(48, y(p), W - 16, y(p), "grid"), text(40, y(p) + 4, p * 100 + " %", "axis", "end"));
@@ -66,7 +66,7 @@ const CHARTS = (() => {
   }
 
   function drivers() {
-    const top = DATA.boulders.rows.map((_, row) => row).filter((row) => boulder(row, "status") === "assessed").slice(0, 10);
+    const top = rows_of(DATA.boulders).filter((row) => boulder(row, "status") === "assessed").slice(0, 10);
     if (!top.length) return nothing("chart-drivers", "No boulder was assessed.");
     const tall = 40, foot = 14 + top.length * tall, left = 92, svg = frame(foot + 44, "What drives the ten assessed boulders that come first in the order of inspection"), x = (p) => left + p * (W - left - 20);
     for (const p of [0, 0.25, 0.5, 0.75, 1]) svg.append(line(x(p), 6, x(p), foot, "grid"), text(x(p), foot + 16, p * 100 + " %"));
@@ -85,10 +85,11 @@ const CHARTS = (() => {
   }
 
   function depths() {
-    const W = 560, list = DATA.profiles, home = by_id("chart-depth");
+    // On a narrow screen the drawing is narrower, not its letters.
+    const list = DATA.profiles, home = by_id("chart-depth"), W = Math.max(340, Math.min(560, home.clientWidth));
     if (!list.length) return nothing("chart-depth", "No depth profiles were stored with this run. “spallcast probe --id NAME” computes one boulder through time and depth.");
     const choice = h("select", { id: "depth-boulder" }, list.map((p, i) => h("option", { value: i }, p.id))), place = h("div", { class: "pair" });
-    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels at their ends name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
+    add(home, [h("label", { for: "depth-boulder" }, "Boulder "), choice, place, h("p", { class: "note" }, "Medians of rock and fire, no spread. Line patterns and the labels on them name the time after ignition. Arrows at the right: what came off, how thick, and when.")]);
     const DASH = ["", "8 3", "2 3", "10 3 2 3", "5 5", "1 4"];
     function show() {
       const p = list[choice.value]; place.replaceChildren();

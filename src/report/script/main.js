@@ -13,7 +13,7 @@ document.querySelectorAll("canvas.key").forEach((c) => {
 });
 document.querySelectorAll("[data-stretch]").forEach((b) => b.addEventListener("click", () => select("stretch", Number(b.dataset.stretch), "first")));
 document.querySelectorAll("[data-boulder]").forEach((b) => b.addEventListener("click", () => select("boulder", Number(b.dataset.boulder), "first")));
-STATE.classes = DATA.boulders.rows.map((_, row) => class_of(row));
+STATE.classes = rows_of(DATA.boulders).map(class_of);
 TABLE.filter();
 MAP.resize();
 document.documentElement.classList.add("ready");

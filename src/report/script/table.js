@@ -1,12 +1,13 @@
 // Filters, and the inspection table that follows them.
 const TABLE = (() => {
-  const PAGE = 50, columns = DATA.table.map((name) => DATA.boulders.fields[DATA.boulders.at.get(name)]);
+  // Rows of one page on the screen, and of a print, in which all pages stand one after the other.
+  const PAGE = 50, PRINTED = 500, columns = DATA.table.map((name) => DATA.boulders.fields[DATA.boulders.at.get(name)]);
   const SHOWN_COLUMNS = columns.filter((c) => !["longitude", "latitude", "p_source_low", "reason", "flags"].includes(c.name));
-  let sort = { name: "rank", down: false }, page = 0, sorted = [];
+  let sort = { name: "rank", down: false }, page = 0, sorted = [], printing = false;
 
-  const form = by_id("filters"), total = DATA.boulders.rows.length;
+  const form = by_id("filters"), total = DATA.boulders.count;
   const option = (value, text) => h("option", { value }, text);
-  const distinct = (name) => [...new Set(DATA.boulders.rows.map((_, row) => boulder(row, name)).filter((v) => v !== null && v !== undefined))].sort();
+  const distinct = (name) => [...new Set(rows_of(DATA.boulders).map((row) => boulder(row, name)).filter((v) => v !== null && v !== undefined))].sort();
   add(form.elements.rock, distinct("rock").map((r, i) => option("v" + i, r)));
   add(form.elements.burn, DATA.burns.names.map((b, i) => option("v" + i, b)));
   add(form.elements.source, [...CLASSES.map((c) => option(c.key, c.words)), option("no-source", "assessed, no source likelihood"), option("unknown", "not assessed")]);
@@ -30,13 +31,13 @@ const TABLE = (() => {
       if (text && !boulder_name(row).toLowerCase().includes(text)) continue;
       STATE.shown.push(row);
     }
-    const weight = { "no-source": 4.5, unknown: 5 };
+    // Light marks first, unknown ones above them, the two heaviest classes on top: neither hides under a lighter mark.
+    const weight = { "no-source": CLASSES.length - 2.7, unknown: CLASSES.length - 2.5 };
     CLASSES.forEach((c, i) => (weight[c.key] = i));
-    // Light marks first, so that what weighs most and what is unknown lies on top.
     STATE.drawn = STATE.shown.filter((row) => DATA.boulders.x[row] !== null).sort((a, b) => weight[STATE.classes[a]] - weight[STATE.classes[b]]);
     const hidden = total - STATE.shown.length, unknown = STATE.shown.filter((row) => STATE.classes[row] === "unknown").length, off = STATE.shown.length - STATE.drawn.length;
-    by_id("shown-words").textContent = `${STATE.shown.length.toLocaleString("en-GB")} of ${total.toLocaleString("en-GB")} boulders shown, ${unknown} of them not assessed` +
-      (off ? `; ${off} without a usable place, in the table only` : "") + (hidden ? `; ${hidden.toLocaleString("en-GB")} hidden by the filters.` : ".") +
+    by_id("shown-words").textContent = `${STATE.shown.length.toLocaleString("en-GB")} of ${total.toLocaleString("en-GB")} boulders shown, ${unknown.toLocaleString("en-GB")} of them not assessed` +
+      (off ? `; ${off.toLocaleString("en-GB")} without a usable place, in the table only` : "") + (hidden ? `; ${hidden.toLocaleString("en-GB")} hidden by the filters.` : ".") +
       (STATE.drawn.length > CROWD ? " Where equal marks lie on one another the map draws one; zoom in to part them." : "");
     page = 0; order(); tell("shown");
   }
@@ -57,10 +58,12 @@ const TABLE = (() => {
   function show() {
     const table = by_id("inspection"), pages = Math.max(1, Math.ceil(sorted.length / PAGE));
     page = Math.min(page, pages - 1);
-    const head = h("tr", {}, SHOWN_COLUMNS.map((c) => h("th", { scope: "col", "aria-sort": sort.name === c.name ? (sort.down ? "descending" : "ascending") : "none" },
-      h("button", { type: "button", title: c.meaning, "data-sort": c.name, onclick: () => { sort = { name: c.name, down: sort.name === c.name && !sort.down }; page = 0; order(); by_id("inspection").querySelector(`[data-sort="${c.name}"]`).focus(); } },
-        heading(c), h("span", { class: "arrow", "aria-hidden": true }, sort.name === c.name ? (sort.down ? "▼" : "▲") : "↕")))));
-    const rows = sorted.slice(page * PAGE, (page + 1) * PAGE).map((row) => {
+    const turn = (c) => { sort = { name: c.name, down: sort.name === c.name && !sort.down }; page = 0; order(); by_id("inspection").querySelector(`[data-sort="${c.name}"]`).focus(); };
+    const arrow = (c) => (sort.name === c.name ? (sort.down ? "▼" : "▲") : "↕");
+    // On paper the head stands on every sheet, which browsers do for text but not for buttons.
+    const title = (c) => printing ? heading(c) : h("button", { type: "button", title: c.meaning, "data-sort": c.name, onclick: () => turn(c) }, heading(c), h("span", { class: "arrow", "aria-hidden": true }, arrow(c)));
+    const head = h("tr", {}, SHOWN_COLUMNS.map((c) => h("th", { scope: "col", "aria-sort": sort.name === c.name ? (sort.down ? "descending" : "ascending") : "none" }, title(c))));
+    const rows = (printing ? sorted.slice(0, PRINTED) : sorted.slice(page * PAGE, (page + 1) * PAGE)).map((row) => {
       const chosen = STATE.selected && STATE.selected.kind === "boulder" && STATE.selected.row === row;
       return h("tr", { "data-row": row, class: (STATE.classes[row] === "unknown" ? "unknown" : "") + (chosen ? " chosen" : ""), onclick: () => select("boulder", row, "table") },
         SHOWN_COLUMNS.map((c) => {
@@ -72,8 +75,13 @@ const TABLE = (() => {
     table.tHead.replaceChildren(head);
     table.tBodies[0].replaceChildren(...rows);
     by_id("page-words").textContent = sorted.length ? `${page * PAGE + 1} to ${Math.min(sorted.length, (page + 1) * PAGE)} of ${sorted.length.toLocaleString("en-GB")}` : "No boulder passes the filters.";
+    const left = sorted.length - PRINTED;
+    by_id("print-words").textContent = left > 0
+      ? `The first ${PRINTED} of ${sorted.length.toLocaleString("en-GB")} boulders in this order are printed; the other ${left.toLocaleString("en-GB")} are in inspection.csv.`
+      : `All ${sorted.length.toLocaleString("en-GB")} boulders that the filters leave are printed.`;
     by_id("page-back").disabled = page === 0; by_id("page-on").disabled = page >= pages - 1;
   }
+  for (const moment of ["beforeprint", "afterprint"]) addEventListener(moment, () => { printing = moment === "beforeprint"; show(); });
   form.addEventListener("input", filter);
   form.addEventListener("submit", (e) => e.preventDefault());
   form.addEventListener("reset", () => setTimeout(filter));
