@@ -24,15 +24,19 @@ const ROCKS: [&str; 5] = ["granite", "sandstone", "chalk", "rhyolite", "quartzit
 const RADII_M: [f64; 2] = [0.75, 0.15];
 const FINE: Resolution = Resolution { nodes: 300, stretch: 7.0, lengths: 7.0, refine: 12 };
 
-/// Largest error of the peak of the face, share of its rise: the contract's 0.2 % and a little for the corners.
-const PEAK: f64 = 0.0022;
-/// Largest error of the face at any step of a class history, share of the peak rise. Above 0.2 % only in the few steps
-/// after a joint of the pulse.
-const AT_STEP: f64 = 0.004;
+/// Largest error of the peak of the face, share of its rise.
+const PEAK: f64 = 0.002;
+/// Largest error of the face at any step of the fire, share of the peak rise. Above 0.2 % only in the few steps after a
+/// joint of the pulse.
+const AT_STEP: f64 = 0.0035;
+/// The same while the face cools, where nothing but heat on its way inward can still spall.
+const COOLING: f64 = 0.005;
 /// Largest error while flames fade onto residual burning, share of the peak rise: the face then cools and nothing spalls.
 const FADING: f64 = 0.015;
 /// Times and depths of the first median flake and of the first slab.
 const EVENT: f64 = 0.033;
+/// A median flake this close to not happening at all has no certain time.
+const EDGE: f64 = 0.52;
 
 struct Trace {
     face_k: Vec<Lanes>,
@@ -64,7 +68,7 @@ fn march(draws: &[Draw; LANES], body: &Body, table: &RockTable, resolution: &Res
     let material = batch::material(draws, body, table, &table.curve, Constant::default());
     let pulse = batch::pulse(draws, &settings);
     let inputs = WatchInputs::new(draws, body, table, &table.skin, &table.strength, &settings);
-    let whole = pulse.residence_s + pulse.decay_s * std::env::var("WHOLE").map(|v|v.parse().unwrap()).unwrap_or(10.0) * if resolution.nodes < 100 {1.0} else {2.0};
+    let whole = pulse.residence_s + pulse.decay_s * batch::DECAY_LENGTHS;
     let grid = batch::grid(draws, body, pulse.residence_s, whole, resolution);
     let mut recorder =
         Recorder { watch: inputs.watch(&material, &grid), face_k: Vec::new(), time_s: Vec::new(), at_least };
@@ -118,7 +122,7 @@ impl Errors {
 
 /// First flake of a draw whose median site let go, or first slab.
 fn first(outcome: &Outcome, family: Family) -> Option<(f64, f64)> {
-    let counts = family != Family::Flake || outcome.flaked_sites >= 0.5;
+    let counts = family != Family::Flake || outcome.flaked_sites >= EDGE;
     outcome.events.of(family).next().filter(|_| counts).map(|e| (e.time_s, e.depth_m))
 }
 
@@ -136,8 +140,8 @@ fn errors(draws: &[Draw; LANES], body: &Body, table: &RockTable, coarse: &Resolu
             let (t, t_fine) = (run.time_s[j].0[l], reference.time_s[k].0[l]);
             assert!((t / t_fine - 1.0).abs() < 1e-9, "steps fall on the same times: {t} {t_fine}");
             let here = ((face.0[l] - reference.face_k[k].0[l]) / rise).abs();
-            if std::env::var("DBG").is_ok() && here > 0.0015 { println!("   lane {l} step {j} t {t} res {} err {:.3} face {:.1}", draw.residence_s, here*100., face.0[l]); }
-            if t <= draw.residence_s { errors.at_step = errors.at_step.max(here); } else { errors.cooling = errors.cooling.max(here); }
+            let worst = if t <= draw.residence_s { &mut errors.at_step } else { &mut errors.cooling };
+            *worst = worst.max(here);
         }
         for family in [Family::Flake, Family::Slab] {
             // A draw on the very edge of spalling may fall on either side; what both did is compared.
@@ -166,12 +170,12 @@ fn the_run_resolution_holds_on_every_class() {
             for rock in ROCKS {
                 let (table, body) = (table(&tables, rock), boulder(radius_m));
                 let draws = class_batch(table, &body, *class);
-    let e = errors(&draws, &body, table, &Resolution{nodes: std::env::var("NODES").map(|v|v.parse().unwrap()).unwrap_or(38),stretch: std::env::var("STRETCH").map(|v|v.parse().unwrap()).unwrap_or(6.0), lengths: std::env::var("LENGTHS").map(|v|v.parse().unwrap()).unwrap_or(4.5), refine: 1}, &FINE);
+                let e = errors(&draws, &body, table, &Resolution::RUN, &FINE);
                 batches += 1;
                 let name = format!("{rock}, {}, radius {radius_m} m", class.word());
-                if std::env::var("NODES").is_ok() {worst = worst.worst(e); continue;}
                 assert!(e.peak <= PEAK, "{name}: peak {}", e.peak);
                 assert!(e.at_step <= AT_STEP, "{name}: at a step {}", e.at_step);
+                assert!(e.cooling <= COOLING, "{name}: cooling {}", e.cooling);
                 assert!(e.flake <= EVENT, "{name}: flake {}", e.flake);
                 assert!(e.slab <= EVENT, "{name}: slab {}", e.slab);
                 worst = worst.worst(e);
@@ -206,11 +210,12 @@ fn stopping_early_loses_no_event() {
                 let whole = march(&draws, &body, table, &Resolution::RUN, usize::MAX);
                 assert!(whole.time_s.len() > run.time_s.len(), "the march stops early");
                 for (short, long) in run.outcomes.iter().zip(&whole.outcomes) {
-                    let name = format!("{rock}, {}, {radius_m} m {short:?} {long:?}", class.word());
+                    let name = format!("{rock}, {}, {radius_m} m", class.word());
                     assert_eq!(short.events, long.events, "{name}");
                     assert_eq!(short.flaked_sites, long.flaked_sites, "{name}");
                     assert_eq!(short.peak_surface_k, long.peak_surface_k, "{name}");
-                    if long.peak_tension_pa > 1.0001 * short.peak_tension_pa || long.peak_stress_pa > 1.0001*short.peak_stress_pa { println!("T {} S {} {} of strength {} {}", long.peak_tension_pa/short.peak_tension_pa, long.peak_stress_pa/short.peak_stress_pa, short.peak_tension_pa/short.strength_pa, rock, class.word()); }
+                    assert!(long.peak_tension_pa <= 1.01 * short.peak_tension_pa, "{name}");
+                    assert!(long.peak_stress_pa <= 1.001 * short.peak_stress_pa, "{name}");
                 }
                 compared += 1;
             }
@@ -240,25 +245,44 @@ fn a_residual_stage_holds() {
     }
 }
 
-#[test]
-fn errors_fall_with_nodes_and_steps() {
+/// Errors of granite and chalk over every class at a resolution.
+fn over_the_classes(nodes: usize, refine: usize) -> Errors {
     let tables = tables();
-    let (table, body) = (table(&tables, "granite"), boulder(0.75));
-    let mut by_size = Vec::new();
-    for (nodes, refine) in [(76,1)] {
-        let coarse = Resolution { nodes, refine, ..FINE };
-        let mut worst = Errors::default();
+    let mut worst = Errors::default();
+    for rock in ["granite", "chalk"] {
+        let (table, body) = (table(&tables, rock), boulder(0.75));
         for class in ExposureClass::ALL {
             let draws = class_batch(table, &body, *class);
+            let coarse = Resolution { nodes, refine, ..Resolution::RUN };
             worst = worst.worst(errors(&draws, &body, table, &coarse, &FINE));
         }
-        println!("| {nodes} | {refine} | {:.3} | {:.3} |", worst.peak * 100.0, worst.at_step * 100.0);
-        by_size.push(((nodes, refine), worst));
+    }
+    worst
+}
+
+#[test]
+fn errors_fall_with_nodes_and_steps() {
+    let mut by_size = Vec::new();
+    for (nodes, refine) in
+        [(12, 1), (14, 1), (16, 1), (18, 1), (20, 1), (22, 1), (24, 1), (38, 1), (22, 2), (22, 4), (44, 2), (88, 4)]
+    {
+        let e = over_the_classes(nodes, refine);
+        println!(
+            "| {nodes} | {refine} | {:.3} | {:.3} | {:.3} | {:.1} | {:.1} |",
+            e.peak * 100.0,
+            e.at_step * 100.0,
+            e.cooling * 100.0,
+            e.flake * 100.0,
+            e.slab * 100.0
+        );
+        by_size.push(((nodes, refine), e));
     }
     let at = |size| by_size.iter().find(|(s, _)| *s == size).map(|(_, e)| *e).unwrap();
-    // The peak is of second order: halving space and time together pays nearly fourfold. The step right after a joint of
-    // the pulse, where the exchange bends, is of first order in its length.
-    let (once, twice, four_times) = (at((38, 1)), at((76, 2)), at((150, 4)));
+    // Halving space and time together: at least second order in the peak, which time then governs. The step right after a
+    // joint of the pulse, where the exchange bends, is of first order in its length.
+    let (once, twice, four_times) = (at((22, 1)), at((44, 2)), at((88, 4)));
     assert!(twice.peak < once.peak / 2.5 && four_times.peak < twice.peak / 2.5, "peak");
     assert!(twice.at_step < 0.75 * once.at_step && four_times.at_step < 0.65 * twice.at_step, "at a step");
+    // In space alone it is better than third.
+    assert!(at((14, 1)).slab > 4.0 * at((24, 1)).slab, "slab");
 }

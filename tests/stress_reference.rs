@@ -105,7 +105,8 @@ fn cap_factor_holds_in_its_range_and_fails_as_stated() {
             .map(|(_, t)| t)
             .fold(0.0, f64::max);
         assert!((closed / row.number("closed_max") - 1.0).abs() < 1e-3, "{d} {f}: {closed}");
-        let deviation = (cap_factor(Lanes::splat(f), Lanes::splat(d)).0[0] * closed / row.number("fem_max") - 1.0) * 100.0;
+        let deviation =
+            (cap_factor(Lanes::splat(f), Lanes::splat(d)).0[0] * closed / row.number("fem_max") - 1.0) * 100.0;
         assert!((deviation - row.number("deviation_c_pct")).abs() < 0.2, "{d} {f}: {deviation}");
         counted += 1;
         if CAP_FACTOR_SKIN.contains(&d) && CAP_FACTOR_SHARE.contains(&f) {

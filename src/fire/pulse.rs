@@ -31,7 +31,7 @@ pub const RESIDUAL_H_W_M2_K: f64 = 10.0;
 
 /// Steps of each leg. `tests/step_plan.rs` shows the error they leave on every class.
 const GROWTH_STEPS: usize = 8;
-const PLATEAU_STEPS: usize = 15;
+const PLATEAU_STEPS: usize = 18;
 const RESIDUAL_STEPS: usize = 15;
 const DECAY_STEPS_MAX: usize = 36;
 /// Lead of the plateau's steps as a share of the growth time, and of the residual stage's as a share of the decay time.

@@ -73,7 +73,9 @@ impl Grid {
         // First moment of (1 - C z)^2 about `z` over a half cell that reaches `h` inward, or outward where h is negative.
         let moment = |z: Lanes, h: Lanes| {
             let s = side(z);
-            h * h * (s * s * 0.5 - s * curvature_per_m * h * (2.0 / 3.0) + curvature_per_m * curvature_per_m * h * h * 0.25)
+            h * h
+                * (s * s * 0.5 - s * curvature_per_m * h * (2.0 / 3.0)
+                    + curvature_per_m * curvature_per_m * h * h * 0.25)
         };
         let zero = Lanes::ZERO;
         let mut storage_m = vec![Storage { above: zero, here: zero, below: zero }; n];

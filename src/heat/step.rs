@@ -174,11 +174,7 @@ impl Stepper {
                 temperature_k: t,
                 resistivity: material.resistivity(near, s),
                 // The factor of this stage's own temperature: the one from the start of the step would cost an order.
-                factor: if REMEMBERS {
-                    material.conductivity_factor(near, hottest[i].max(near))
-                } else {
-                    Lanes::ONE
-                },
+                factor: if REMEMBERS { material.conductivity_factor(near, hottest[i].max(near)) } else { Lanes::ONE },
             };
         }
 

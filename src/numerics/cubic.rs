@@ -40,8 +40,7 @@ pub fn crossing(array: &[Lanes], lane: usize, from: usize, mark: f64) -> f64 {
     const STEPS: usize = 4;
     let first = from.max(1).min(array.len() - 3) - 1;
     let y: [f64; 4] = std::array::from_fn(|j| array[first + j].0[lane] - mark);
-    let (d1, d2, d3) =
-        (y[1] - y[0], (y[2] - 2.0 * y[1] + y[0]) / 2.0, (y[3] - 3.0 * y[2] + 3.0 * y[1] - y[0]) / 6.0);
+    let (d1, d2, d3) = (y[1] - y[0], (y[2] - 2.0 * y[1] + y[0]) / 2.0, (y[3] - 3.0 * y[2] + 3.0 * y[1] - y[0]) / 6.0);
     let low = (from - first) as f64;
     let (below, above) = (array[from].0[lane] - mark, array[from + 1].0[lane] - mark);
     // Newton's steps from the straight line, kept between the nodes.

@@ -406,8 +406,7 @@ impl Observer for Watch<'_> {
     fn see(&mut self, column: &mut Column, moment: &Moment) -> Verdict {
         let grid = &column.grid;
         let draws = self.draws;
-        let (largest, active) =
-            self.skin.update(draws.skin_law, &draws.skin, &column.temperature_k, &column.hottest_k);
+        let (largest, active) = self.skin.update(draws.skin_law, &draws.skin, &column.temperature_k, &column.hottest_k);
         let stress_pa = &self.skin.stress_pa;
         let force = membrane_force_n_m(grid, stress_pa, active);
         let mut drive = self.face.drive(grid, stress_pa, active, force, &mut self.tension_pa);
