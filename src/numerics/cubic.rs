@@ -2,37 +2,58 @@
 
 use super::lanes::Lanes;
 
-/// First of the four nodes around `index` in an array of `n`, and their weights there.
-///
-/// ```
-/// use spallcast::numerics::cubic::weights;
-/// let (first, w) = weights(10, 4.25);
-/// let cube = |i: usize| (i as f64).powi(3);
-/// let value: f64 = (0..4).map(|j| w[j] * cube(first + j)).sum();
-/// assert!((value - 4.25f64.powi(3)).abs() < 1e-12);
-/// ```
-///
-/// # Panics
-/// With fewer than four nodes.
-pub fn weights(n: usize, index: f64) -> (usize, [f64; 4]) {
-    assert!(n >= 4, "a cubic needs four nodes");
-    let first = (index.max(1.0) as usize - 1).min(n - 4);
-    let v = index - first as f64;
-    let (a, b, c, d) = (v, v - 1.0, v - 2.0, v - 3.0);
-    (first, [-b * c * d / 6.0, a * c * d / 2.0, -a * b * d / 2.0, a * b * c / 6.0])
+/// A broken index in an array of some length: the four nodes around it and their weights.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Place {
+    first: usize,
+    weights: [f64; 4],
+    /// Node at or before the index, with one after it.
+    below: usize,
+}
+
+impl Place {
+    /// A place in arrays of `n`.
+    ///
+    /// ```
+    /// use spallcast::numerics::{cubic::Place, lanes::Lanes};
+    /// let cubes: Vec<Lanes> = (0..10).map(|i| Lanes::splat(f64::from(i).powi(3))).collect();
+    /// assert!((Place::new(10, 4.25).of(&cubes, 0) - 4.25f64.powi(3)).abs() < 1e-12);
+    /// ```
+    ///
+    /// # Panics
+    /// With fewer than four nodes.
+    pub fn new(n: usize, index: f64) -> Place {
+        assert!(n >= 4, "a cubic needs four nodes");
+        let first = (index.max(1.0) as usize - 1).min(n - 4);
+        let v = index - first as f64;
+        let (a, b, c, d) = (v, v - 1.0, v - 2.0, v - 3.0);
+        Place {
+            first,
+            weights: [-b * c * d / 6.0, a * c * d / 2.0, -a * b * d / 2.0, a * b * c / 6.0],
+            below: (index as usize).min(n - 2),
+        }
+    }
+
+    /// Value of one lane of an array there.
+    pub fn of(&self, array: &[Lanes], lane: usize) -> f64 {
+        self.weights.iter().zip(&array[self.first..]).map(|(w, v)| w * v.0[lane]).sum()
+    }
+
+    /// [`Place::of`], kept between the two nearest nodes, so that a front is not overshot.
+    pub fn within(&self, array: &[Lanes], lane: usize) -> f64 {
+        let (a, b) = (array[self.below].0[lane], array[self.below + 1].0[lane]);
+        self.of(array, lane).clamp(a.min(b), a.max(b))
+    }
 }
 
 /// Value of one lane of `array` `[n]` at a broken index.
 pub fn at(array: &[Lanes], lane: usize, index: f64) -> f64 {
-    let (first, w) = weights(array.len(), index);
-    w.iter().zip(&array[first..]).map(|(w, v)| w * v.0[lane]).sum()
+    Place::new(array.len(), index).of(array, lane)
 }
 
-/// [`at`], kept between the two nearest nodes, so that a front is not overshot.
+/// [`at`], kept between the two nearest nodes.
 pub fn at_within(array: &[Lanes], lane: usize, index: f64) -> f64 {
-    let below = (index as usize).min(array.len() - 2);
-    let (a, b) = (array[below].0[lane], array[below + 1].0[lane]);
-    at(array, lane, index).clamp(a.min(b), a.max(b))
+    Place::new(array.len(), index).within(array, lane)
 }
 
 /// Index between `from` and `from + 1` at which one lane of `array` reaches `mark`, which it does between these nodes.

@@ -100,10 +100,22 @@ impl Lanes {
         Lanes::from_fn(|l| if left.0[l] > right.0[l] { yes.0[l] } else { no.0[l] })
     }
 
-    /// Largest lane.
+    /// Largest lane; halves are compared with halves, which registers do side by side. No lane may be not-a-number.
     #[inline(always)]
     pub fn largest(self) -> f64 {
-        self.0.iter().copied().fold(f64::NEG_INFINITY, f64::max)
+        let larger = |a: f64, b: f64| if a > b { a } else { b };
+        let four: [f64; LANES / 2] = std::array::from_fn(|l| larger(self.0[l], self.0[l + LANES / 2]));
+        let two: [f64; LANES / 4] = std::array::from_fn(|l| larger(four[l], four[l + LANES / 4]));
+        larger(two[0], two[1])
+    }
+
+    /// Whether any lane has other bits than the other's.
+    #[inline(always)]
+    pub fn differs(self, other: Lanes) -> bool {
+        let bits: [u64; LANES] = std::array::from_fn(|l| self.0[l].to_bits() ^ other.0[l].to_bits());
+        let four: [u64; LANES / 2] = std::array::from_fn(|l| bits[l] | bits[l + LANES / 2]);
+        let two: [u64; LANES / 4] = std::array::from_fn(|l| four[l] | four[l + LANES / 4]);
+        (two[0] | two[1]) != 0
     }
 }
 

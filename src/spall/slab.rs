@@ -130,8 +130,8 @@ pub struct FaceOnGrid {
     shells: sphere::Shells,
     /// 1 at the nodes within the judged depth, 0 below, `[n]`; empty on a flat face, which has no convex term.
     within: Vec<Lanes>,
-    /// Broken index of the judged depth on a convex face.
-    judged_index: [f64; LANES],
+    /// Place of the judged depth in the grid.
+    judged: [cubic::Place; LANES],
     judged_m: Lanes,
     /// Thin-skin tension under the patch for a unit force, 1/m.
     thin_per_m: Lanes,
@@ -148,7 +148,7 @@ impl FaceOnGrid {
             face,
             shells: sphere::Shells::new(grid, face.curvature_per_m),
             within: if flat { Vec::new() } else { grid.depth_m.iter().map(within).collect() },
-            judged_index: std::array::from_fn(|l| grid.index_at(l, judged_m.0[l])),
+            judged: std::array::from_fn(|l| cubic::Place::new(grid.len(), grid.index_at(l, judged_m.0[l]))),
             judged_m,
             thin_per_m: Lanes::from_fn(|l| {
                 let patch = face.patch_m.0[l];
@@ -182,7 +182,7 @@ impl FaceOnGrid {
                 convex = convex.max(*within * *tension);
             }
             // The judged depth lies between nodes.
-            convex = convex.max(Lanes::from_fn(|l| cubic::at_within(tension_pa, l, self.judged_index[l])));
+            convex = convex.max(Lanes::from_fn(|l| self.judged[l].within(tension_pa, l)));
         }
         // The thin-skin form is an upper bound: where even that does not govern, the stack of sheets does not.
         let thin = force_n_m * self.thin_per_m;

@@ -260,7 +260,10 @@ impl<'a> Watch<'a> {
         let known = self.state[lane].index;
         if known > 0.0 {
             // The depth where it would crack moves inward: where it was last, rock was hotter and weaker than where it is.
-            let strength = self.strength_pa(lane, cubic::at_within(&column.hottest_k, lane, known));
+            let node = (known as usize).min(column.hottest_k.len() - 2);
+            let share = known - node as f64;
+            let (above, below) = (column.hottest_k[node].0[lane], column.hottest_k[node + 1].0[lane]);
+            let strength = self.strength_pa(lane, above + share * (below - above));
             if largest < FAR_BELOW * strength {
                 self.state[lane].margin_pa = largest - strength;
                 self.state[lane].depth_m = 0.0;

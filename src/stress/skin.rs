@@ -74,7 +74,7 @@ impl Skin {
                 return (largest, i);
             }
             let (stiffness, known_for) = &mut self.stiffness[i];
-            if *known_for != hottest_k[i] {
+            if known_for.differs(hottest_k[i]) {
                 let (factor, _) = law.stiffness_factor.at_lanes(hottest_k[i]);
                 (*stiffness, *known_for) = (Lanes::ONE + draws.residual_branch * (factor - Lanes::ONE), hottest_k[i]);
             }
