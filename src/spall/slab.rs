@@ -97,6 +97,14 @@ impl StrengthLaw {
     pub fn factor(&self, toughness_limited: bool, hottest_k: f64) -> f64 {
         if toughness_limited { self.toughness.at(hottest_k).0 } else { self.tensile.at(hottest_k).0 }
     }
+
+    /// [`StrengthLaw::factor`] of eight draws, `toughness_limited` 1 or 0.
+    #[inline(always)]
+    pub fn factors(&self, toughness_limited: Lanes, hottest_k: Lanes) -> Lanes {
+        let (toughness, _) = self.toughness.at_lanes(hottest_k);
+        let (tensile, _) = self.tensile.at_lanes(hottest_k);
+        Lanes::where_greater(toughness_limited, Lanes::ZERO, toughness, tensile)
+    }
 }
 
 /// Geometry that turns a hot skin into normal tension, per draw.

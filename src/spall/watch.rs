@@ -92,23 +92,31 @@ pub struct WatchDraws<'a> {
 struct DrawState {
     /// Drive less strength at the previous step, Pa.
     margin_pa: f64,
-    /// Slab depth when it was last looked at, its index in the grid, and face temperature at the previous step.
+    /// Slab depth at the previous step, and its index in the grid when it was last looked at.
     depth_m: f64,
     index: f64,
-    surface_k: f64,
     risk: f64,
     risk_s: f64,
     flake_depth_m: f64,
     flake_stress_pa: f64,
-    peak_drive_pa: f64,
     slabs: usize,
-    /// A plate has left.
-    stripped: bool,
     leaves_u: f64,
     /// A plate that stayed shields the face, or the generations are used up.
     done: bool,
     split: bool,
     rind_gone: bool,
+}
+
+/// Largest values so far.
+#[derive(Debug, Clone, Copy)]
+struct Peaks {
+    surface_k: Lanes,
+    flux_w_m2: Lanes,
+    absorbed_j_m2: Lanes,
+    stress_pa: Lanes,
+    drive_pa: Lanes,
+    /// Of the drive, before any plate has left.
+    tension_pa: Lanes,
 }
 
 /// The observer.
@@ -121,6 +129,16 @@ pub struct Watch<'a> {
     tension_pa: Vec<Lanes>,
     state: [DrawState; LANES],
     outcome: [Outcome; LANES],
+    peaks: Peaks,
+    /// Cold strength, Pa, and 1 where toughness limits it.
+    strength_pa: Lanes,
+    toughness_limited: Lanes,
+    /// Section average that splits a boulder per membrane force, 1/m; 0 where it is too large to split or a flat face.
+    section_per_m: Lanes,
+    /// 1 once a plate has left.
+    stripped: Lanes,
+    /// Face temperature at the previous step, K.
+    surface_k: Lanes,
     /// Force and drive of the last step, for probes.
     last: (Lanes, Drive),
 }
@@ -133,14 +151,11 @@ impl<'a> Watch<'a> {
             margin_pa: -draws.slab[l].strength_pa,
             depth_m: 0.0,
             index: 0.0,
-            surface_k: 0.0,
             risk: 0.0,
             risk_s: 0.0,
             flake_depth_m: 0.0,
             flake_stress_pa: 0.0,
-            peak_drive_pa: 0.0,
             slabs: 0,
-            stripped: false,
             leaves_u: draws.slab[l].leaves_u,
             done: draws.generations_max == 0,
             split: false,
@@ -168,6 +183,22 @@ impl<'a> Watch<'a> {
             tension_pa: vec![zero; n],
             state,
             outcome,
+            peaks: Peaks {
+                surface_k: zero,
+                flux_w_m2: zero,
+                absorbed_j_m2: zero,
+                stress_pa: zero,
+                drive_pa: zero,
+                tension_pa: zero,
+            },
+            strength_pa: Lanes::from_fn(|l| draws.slab[l].strength_pa),
+            toughness_limited: Lanes::from_fn(|l| f64::from(u8::from(draws.slab[l].toughness_limited))),
+            section_per_m: Lanes::from_fn(|l| match draws.slab[l].radius_m {
+                Some(radius) if radius < SPLIT_RADIUS_MAX_M => 2.0 * draws.face.heated_share.0[l] / radius,
+                _ => 0.0,
+            }),
+            stripped: zero,
+            surface_k: zero,
             last: (zero, Drive { largest_pa: zero, convex_pa: zero, skin_m: zero }),
         }
     }
@@ -185,6 +216,11 @@ impl<'a> Watch<'a> {
     /// What the draws did; nothing spalls below the floors of exposure.
     pub fn outcomes(mut self, account: &Account) -> [Outcome; LANES] {
         for (l, outcome) in self.outcome.iter_mut().enumerate() {
+            outcome.peak_surface_k = self.peaks.surface_k.0[l];
+            outcome.peak_flux_w_m2 = self.peaks.flux_w_m2.0[l];
+            outcome.absorbed_j_m2 = self.peaks.absorbed_j_m2.0[l];
+            outcome.peak_stress_pa = self.peaks.stress_pa.0[l];
+            outcome.peak_tension_pa = self.peaks.tension_pa.0[l];
             outcome.flaked_sites = -libm::expm1(-self.state[l].risk);
             outcome.fuel_spent = account.fuel_spent.0[l] > 0.0;
             if !outcome.above_floor() {
@@ -197,10 +233,8 @@ impl<'a> Watch<'a> {
 
     fn see_flake(&mut self, lane: usize, moment: &Moment, risk: f64, depth_m: f64, stress_pa: f64, surface_k: f64) {
         let draws = &self.draws.flake;
+        let before_k = self.surface_k.0[lane];
         let state = &mut self.state[lane];
-        if risk <= state.risk {
-            return;
-        }
         let outcome = &mut self.outcome[lane];
         if risk >= MEDIAN_RISK {
             // Under a steady flux the rise, the depth and B are powers of time, so ln B is close to linear in ln t.
@@ -214,7 +248,7 @@ impl<'a> Watch<'a> {
                     family: Family::Flake,
                     time_s: between_powers(end_s - moment.step_s.0[lane], end_s, share),
                     depth_m: flake::thickness_m(mean, draws.grain_m, draws.energy_floor_pa2_m.0[lane], stress),
-                    surface_k: state.surface_k + share * (surface_k - state.surface_k),
+                    surface_k: before_k + share * (surface_k - before_k),
                 });
             }
         }
@@ -234,7 +268,7 @@ impl<'a> Watch<'a> {
                 family: Family::Flake,
                 time_s: state.risk_s,
                 depth_m: flake::thickness_m(state.flake_depth_m, draws.grain_m, floor, state.flake_stress_pa),
-                surface_k: self.outcome[lane].peak_surface_k,
+                surface_k: self.peaks.surface_k.0[lane],
             });
         }
     }
@@ -247,11 +281,10 @@ impl<'a> Watch<'a> {
     }
 
     /// Slab of one draw; returns the thickness to strip when a plate leaves.
-    fn see_slab(&mut self, lane: usize, column: &Column, moment: &Moment, drive: &Drive) -> Option<f64> {
+    fn see_slab(&mut self, lane: usize, column: &Column, moment: &Moment, drive: &Drive, weakest: f64) -> Option<f64> {
         let slab = self.draws.slab[lane];
         let largest = drive.largest_pa.0[lane];
         // The crack lies below the face, which is hotter and weaker: far below the face's own strength nothing can happen.
-        let weakest = self.strength_pa(lane, column.hottest_k[0].0[lane]);
         if largest < FAR_BELOW * weakest {
             self.state[lane].margin_pa = largest - weakest;
             self.state[lane].depth_m = 0.0;
@@ -275,7 +308,7 @@ impl<'a> Watch<'a> {
         let depth = column.grid.depth_at(lane, index);
         let hottest = cubic::at_within(&column.hottest_k, lane, index);
         let margin = largest - self.strength_pa(lane, hottest);
-        let surface_k = column.temperature_k[0].0[lane];
+        let (before_k, surface_k) = (self.surface_k.0[lane], column.temperature_k[0].0[lane]);
         let state = &mut self.state[lane];
         if margin < 0.0 {
             state.margin_pa = margin;
@@ -294,7 +327,7 @@ impl<'a> Watch<'a> {
             family: Family::Slab,
             time_s: moment.time_s.0[lane] - (1.0 - share) * moment.step_s.0[lane],
             depth_m: thickness,
-            surface_k: state.surface_k + share * (surface_k - state.surface_k),
+            surface_k: before_k + share * (surface_k - before_k),
         });
         state.slabs += 1;
         let p = self.draws.leaves_probability;
@@ -308,34 +341,25 @@ impl<'a> Watch<'a> {
         leaves.then_some(thickness)
     }
 
-    /// Whether nothing more can happen to a draw once the fire is over.
-    fn is_over(&self, lane: usize, column: &Column, moment: &Moment, drive: &Drive, force_n_m: f64) -> bool {
+    /// Whether nothing more can happen to a draw once the fire is over; `weakest` is the strength of rock as hot as the face
+    /// has been, Pa.
+    fn is_over(&self, lane: usize, moment: &Moment, drive: &Drive, force_n_m: f64, weakest: f64) -> bool {
         let state = &self.state[lane];
         let largest = drive.largest_pa.0[lane];
-        if state.surface_k < COLD_FACE_K && largest < PAST_PEAK * state.peak_drive_pa {
+        if self.surface_k.0[lane] < COLD_FACE_K && largest < PAST_PEAK * self.peaks.drive_pa.0[lane] {
             return true;
         }
         if moment.flux_w_m2.0[lane] >= 0.0 || !state.rind_gone || self.draws.wet.is_some() {
             return false;
         }
-        let harmless = HARMLESS * self.strength_pa(lane, column.hottest_k[0].0[lane]);
-        let splits = !state.split && self.section_average_pa(lane, force_n_m) >= SPLIT_FACTOR * harmless;
+        let harmless = HARMLESS * weakest;
+        let splits = !state.split && self.section_per_m.0[lane] * force_n_m >= SPLIT_FACTOR * harmless;
         !splits && (state.done || largest < harmless)
-    }
-
-    /// Section average that splits a boulder, Pa; 0 where it is too large to split or a flat face.
-    fn section_average_pa(&self, lane: usize, force_n_m: f64) -> f64 {
-        match self.draws.slab[lane].radius_m {
-            Some(radius) if radius < SPLIT_RADIUS_MAX_M => {
-                2.0 * self.draws.face.heated_share.0[lane] * force_n_m / radius
-            }
-            _ => 0.0,
-        }
     }
 
     fn see_split(&mut self, lane: usize, column: &Column, moment: &Moment, force_n_m: f64) {
         let Some(radius) = self.draws.slab[lane].radius_m else { return };
-        let average = self.section_average_pa(lane, force_n_m);
+        let average = self.section_per_m.0[lane] * force_n_m;
         let core_k = column.hottest_k[column.hottest_k.len() - 1].0[lane];
         if average > 0.0 && average >= SPLIT_FACTOR * self.strength_pa(lane, core_k) {
             self.state[lane].split = true;
@@ -416,38 +440,40 @@ impl Observer for Watch<'_> {
         self.add_vapour(column, moment, &mut drive);
         self.last = (force, drive);
         let (risk, flake_depth) = self.sites.risk(&draws.flake, &grid.depth_m, &self.skin.stress_pa, largest);
+        let surface_k = column.temperature_k[0];
+        // The strength of rock as hot as the face has been: no rock of the draw is weaker.
+        let weakest = self.strength_pa * draws.strength_law.factors(self.toughness_limited, column.hottest_k[0]);
+        let average = self.section_per_m * force;
+        let peaks = &mut self.peaks;
+        peaks.surface_k = peaks.surface_k.max(surface_k);
+        peaks.flux_w_m2 = peaks.flux_w_m2.max(moment.flux_w_m2);
+        peaks.absorbed_j_m2 = peaks.absorbed_j_m2.max(moment.absorbed_j_m2);
+        peaks.stress_pa = peaks.stress_pa.max(largest);
+        let whole = Lanes::where_greater(self.stripped, Lanes::ZERO, Lanes::ZERO, drive.largest_pa);
+        peaks.tension_pa = peaks.tension_pa.max(whole);
+        peaks.drive_pa = peaks.drive_pa.max(drive.largest_pa);
         let mut stripped = false;
-        let mut enough = true;
         for l in 0..LANES {
-            let surface_k = column.temperature_k[0].0[l];
-            let outcome = &mut self.outcome[l];
-            outcome.peak_surface_k = outcome.peak_surface_k.max(surface_k);
-            outcome.peak_flux_w_m2 = outcome.peak_flux_w_m2.max(moment.flux_w_m2.0[l]);
-            outcome.absorbed_j_m2 = outcome.absorbed_j_m2.max(moment.absorbed_j_m2.0[l]);
-            outcome.peak_stress_pa = outcome.peak_stress_pa.max(largest.0[l]);
-            if !self.state[l].stripped {
-                outcome.peak_tension_pa = outcome.peak_tension_pa.max(drive.largest_pa.0[l]);
+            if risk.0[l] > self.state[l].risk {
+                self.see_flake(l, moment, risk.0[l], flake_depth.0[l], largest.0[l], surface_k.0[l]);
             }
-            self.see_flake(l, moment, risk.0[l], flake_depth.0[l], largest.0[l], surface_k);
-            if !self.state[l].rind_gone && !self.state[l].stripped {
+            if !self.state[l].rind_gone && self.stripped.0[l] == 0.0 {
                 self.see_rind(l, column, moment);
             }
-            if !self.state[l].split {
+            if !self.state[l].split && average.0[l] >= SPLIT_FACTOR * weakest.0[l] {
                 self.see_split(l, column, moment, force.0[l]);
             }
             if !self.state[l].done
-                && let Some(thickness) = self.see_slab(l, column, moment, &drive)
+                && let Some(thickness) = self.see_slab(l, column, moment, &drive, weakest.0[l])
             {
                 column.strip(self.material, l, thickness);
-                self.state[l].stripped = true;
+                self.stripped.0[l] = 1.0;
                 stripped = true;
             }
-            let state = &mut self.state[l];
-            state.surface_k = column.temperature_k[0].0[l];
-            state.peak_drive_pa = state.peak_drive_pa.max(drive.largest_pa.0[l]);
-            enough &= self.is_over(l, column, moment, &drive, force.0[l]);
         }
-        if enough && !stripped { Verdict::Enough } else { Verdict::Continue }
+        self.surface_k = column.temperature_k[0];
+        let enough = !stripped && (0..LANES).all(|l| self.is_over(l, moment, &drive, force.0[l], weakest.0[l]));
+        if enough { Verdict::Enough } else { Verdict::Continue }
     }
 
     fn finish(&mut self, _moment: &Moment) {
