@@ -27,14 +27,14 @@ const FINE: Resolution = Resolution { nodes: 300, stretch: 7.0, lengths: 7.0, re
 /// Largest error of the peak of the face, share of its rise.
 const PEAK: f64 = 0.002;
 /// Largest error of the face at any step of the fire, share of the peak rise. Above 0.2 % only in the few steps after a
-/// joint of the pulse.
-const AT_STEP: f64 = 0.0035;
+/// joint of the pulse, and where small quartzite, hot to its core, passes the transition of its quartz (the largest).
+const AT_STEP: f64 = 0.006;
 /// The same while the face cools, where nothing but heat on its way inward can still spall.
 const COOLING: f64 = 0.005;
 /// Largest error while flames fade onto residual burning, share of the peak rise: the face then cools and nothing spalls.
 const FADING: f64 = 0.015;
 /// Times and depths of the first median flake and of the first slab.
-const EVENT: f64 = 0.033;
+const EVENT: f64 = 0.036;
 /// A median flake this close to not happening at all has no certain time.
 const EDGE: f64 = 0.52;
 
@@ -214,6 +214,7 @@ fn stopping_early_loses_no_event() {
                     assert_eq!(short.events, long.events, "{name}");
                     assert_eq!(short.flaked_sites, long.flaked_sites, "{name}");
                     assert_eq!(short.peak_surface_k, long.peak_surface_k, "{name}");
+                    assert!(long.absorbed_j_m2 <= 1.005 * short.absorbed_j_m2, "{name}");
                     assert!(long.peak_tension_pa <= 1.01 * short.peak_tension_pa, "{name}");
                     assert!(long.peak_stress_pa <= 1.001 * short.peak_stress_pa, "{name}");
                 }
@@ -264,7 +265,7 @@ fn over_the_classes(nodes: usize, refine: usize) -> Errors {
 fn errors_fall_with_nodes_and_steps() {
     let mut by_size = Vec::new();
     for (nodes, refine) in
-        [(12, 1), (14, 1), (16, 1), (18, 1), (20, 1), (22, 1), (24, 1), (38, 1), (22, 2), (22, 4), (44, 2), (88, 4)]
+        [(12, 1), (14, 1), (16, 1), (18, 1), (20, 1), (22, 1), (24, 1), (38, 1), (20, 2), (20, 4), (40, 2), (80, 4)]
     {
         let e = over_the_classes(nodes, refine);
         println!(
@@ -280,7 +281,7 @@ fn errors_fall_with_nodes_and_steps() {
     let at = |size| by_size.iter().find(|(s, _)| *s == size).map(|(_, e)| *e).unwrap();
     // Halving space and time together: at least second order in the peak, which time then governs. The step right after a
     // joint of the pulse, where the exchange bends, is of first order in its length.
-    let (once, twice, four_times) = (at((22, 1)), at((44, 2)), at((88, 4)));
+    let (once, twice, four_times) = (at((20, 1)), at((40, 2)), at((80, 4)));
     assert!(twice.peak < once.peak / 2.5 && four_times.peak < twice.peak / 2.5, "peak");
     assert!(twice.at_step < 0.75 * once.at_step && four_times.at_step < 0.65 * twice.at_step, "at a step");
     // In space alone it is better than third.

@@ -39,7 +39,7 @@ pub struct Resolution {
 
 impl Resolution {
     /// The ensemble's resolution; `tests/step_plan.rs` shows the error it leaves on every class.
-    pub const RUN: Resolution = Resolution { nodes: 22, stretch: 7.0, lengths: 4.5, refine: 1 };
+    pub const RUN: Resolution = Resolution { nodes: 20, stretch: 7.0, lengths: 4.5, refine: 1 };
     /// A probe's resolution: errors of a hundredth of the run's.
     pub const PROBE: Resolution = Resolution { nodes: 360, stretch: 7.0, lengths: 7.0, refine: 10 };
 }
