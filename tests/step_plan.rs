@@ -32,7 +32,7 @@ const AT_STEP: f64 = 0.006;
 /// The same while the face cools, where nothing but heat on its way inward can still spall.
 const COOLING: f64 = 0.005;
 /// Largest error while flames fade onto residual burning, share of the peak rise: the face then cools and nothing spalls.
-const FADING: f64 = 0.015;
+const FADING: f64 = 0.006;
 /// Times and depths of the first median flake and of the first slab.
 const EVENT: f64 = 0.036;
 /// A median flake this close to not happening at all has no certain time.
