@@ -1,4 +1,4 @@
-//! Numbers without a domain: lanes of draws, interpolation tables, tridiagonal elimination, quantiles.
+//! Numbers without a domain: lanes of draws, table rows, cubics, interpolation tables, quantiles.
 
 pub mod cubic;
 pub mod gather;
