@@ -94,6 +94,7 @@ impl Pulse {
 
     /// The level at `t_s` from the end of flaming on: the residual one and what is left of the flames above it. At the end
     /// of flaming itself it is the flaming one, so a pulse without a residual stage decays from there.
+    #[inline(always)]
     fn level_after_flaming(&self, t_s: Lanes) -> Level {
         let flames = ((self.flaming_s - t_s) / self.decay_s).exp();
         let fade = |flaming: Lanes, residual: Lanes| residual + flames * (flaming - residual);
@@ -137,6 +138,7 @@ impl SurfaceForcing for Pulse {
         }
     }
 
+    #[inline(always)]
     fn exchange(&self, leg: usize, t_s: Lanes, live: Lanes) -> Exchange {
         let (g, level, h) = match leg {
             GROWTH => {

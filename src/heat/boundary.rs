@@ -149,6 +149,7 @@ pub struct StepLengths {
 impl Iterator for StepLengths {
     type Item = Lanes;
 
+    #[inline(always)]
     fn next(&mut self) -> Option<Lanes> {
         if self.taken == self.leg.steps {
             return None;

@@ -76,12 +76,12 @@ impl Column {
     pub fn strip(&mut self, material: &Material, lane: usize, thickness_m: f64) {
         let n = self.content_k.len();
         let before = self.heat_j_m2(material).0[lane];
-        for array in [&mut self.content_k, &mut self.hottest_k] {
-            let old = array.clone();
-            for i in 0..n {
-                let index = self.grid.index_at(lane, self.grid.depth_m[i].0[lane] + thickness_m);
-                array[i].0[lane] = cubic::at_within(&old, lane, index);
-            }
+        let (content_k, hottest_k) = (self.content_k.clone(), self.hottest_k.clone());
+        for i in 0..n {
+            let index = self.grid.index_at(lane, self.grid.depth_m[i].0[lane] + thickness_m);
+            let place = cubic::Place::new(n, index);
+            self.content_k[i].0[lane] = place.within(&content_k, lane);
+            self.hottest_k[i].0[lane] = place.within(&hottest_k, lane);
         }
         self.refresh(material);
         self.removed_j_m2.0[lane] += before - self.heat_j_m2(material).0[lane];

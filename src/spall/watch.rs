@@ -236,21 +236,19 @@ impl<'a> Watch<'a> {
         let before_k = self.surface_k.0[lane];
         let state = &mut self.state[lane];
         let outcome = &mut self.outcome[lane];
-        if risk >= MEDIAN_RISK {
+        if state.risk < MEDIAN_RISK && risk >= MEDIAN_RISK {
             // Under a steady flux the rise, the depth and B are powers of time, so ln B is close to linear in ln t.
             let share =
                 if state.risk > 0.0 { libm::log(MEDIAN_RISK / state.risk) / libm::log(risk / state.risk) } else { 1.0 };
-            if state.risk < MEDIAN_RISK {
-                let mean = between_powers(state.flake_depth_m, depth_m, share);
-                let end_s = moment.time_s.0[lane];
-                let stress = state.flake_stress_pa + share * (stress_pa - state.flake_stress_pa);
-                outcome.events.push(Event {
-                    family: Family::Flake,
-                    time_s: between_powers(end_s - moment.step_s.0[lane], end_s, share),
-                    depth_m: flake::thickness_m(mean, draws.grain_m, draws.energy_floor_pa2_m.0[lane], stress),
-                    surface_k: before_k + share * (surface_k - before_k),
-                });
-            }
+            let mean = between_powers(state.flake_depth_m, depth_m, share);
+            let end_s = moment.time_s.0[lane];
+            let stress = state.flake_stress_pa + share * (stress_pa - state.flake_stress_pa);
+            outcome.events.push(Event {
+                family: Family::Flake,
+                time_s: between_powers(end_s - moment.step_s.0[lane], end_s, share),
+                depth_m: flake::thickness_m(mean, draws.grain_m, draws.energy_floor_pa2_m.0[lane], stress),
+                surface_k: before_k + share * (surface_k - before_k),
+            });
         }
         state.risk = risk;
         state.risk_s = moment.time_s.0[lane];
