@@ -27,7 +27,7 @@ use crate::settings::Settings;
 use crate::site::{Boulder, Burn, Kind, Moisture, RockChoice};
 use crate::stress::sphere::{CAP_FACTOR_SHARE, CAP_FACTOR_SKIN};
 use batch::Resolution;
-use draws::{BLANK, Body, Draw, Sampler};
+use draws::{Body, Draw, Sampler};
 use fires::Fire;
 use summary::DrawSummary;
 use tables::Tables;
@@ -253,7 +253,7 @@ impl Model {
         note(boulder.kind == Kind::Outcrop && boulder.radius_m.is_none(), Flag::SizeAssumed);
     }
 
-    /// Runs the draws of one fire, eight of one rock at a time, and adds them to `summaries`.
+    /// Runs the draws of one fire and adds them to `summaries`.
     fn run_fire(
         &self,
         boulder: &Boulder,
@@ -262,6 +262,26 @@ impl Model {
         rocks: &[(usize, f64)],
         summaries: &mut [DrawSummary],
         flags: &mut BTreeSet<Flag>,
+    ) {
+        self.each_group(boulder, body, fire, rocks, |rock, draws, numbers| {
+            let result = batch::run(draws, body, &self.tables.rocks[rock], &self.settings.spall, &self.resolution);
+            for (l, j) in numbers.iter().enumerate() {
+                let (draw, outcome) = (&draws[l], &result.outcomes[l]);
+                summaries[*j].add(draw, outcome);
+                note_draw(fire, draw, outcome, result.sphere[l], flags);
+            }
+        });
+    }
+
+    /// Shows the draws of a boulder in a fire, eight of one rock at a time, to `see`: the rock's index, the draws, and their
+    /// numbers. A short last group repeats its first draw to fill the lanes.
+    pub fn each_group(
+        &self,
+        boulder: &Boulder,
+        body: &Body,
+        fire: &Fire,
+        rocks: &[(usize, f64)],
+        mut see: impl FnMut(usize, &[Draw; LANES], &[usize]),
     ) {
         let sampler = Sampler {
             points: &self.points,
@@ -273,18 +293,7 @@ impl Model {
         for (rock, _) in rocks {
             let members: Vec<usize> = (0..drawn.len()).filter(|j| drawn[*j].rock == *rock).collect();
             for group in members.chunks(LANES) {
-                // A short last group repeats its first draw to fill the lanes.
-                let mut lanes = [BLANK; LANES];
-                for (l, lane) in lanes.iter_mut().enumerate() {
-                    *lane = drawn[*group.get(l).unwrap_or(&group[0])];
-                }
-                let result =
-                    batch::run(&lanes, body, &self.tables.rocks[*rock], &self.settings.spall, &self.resolution);
-                for (l, j) in group.iter().enumerate() {
-                    let (draw, outcome) = (&drawn[*j], &result.outcomes[l]);
-                    summaries[*j].add(draw, outcome);
-                    note_draw(fire, draw, outcome, result.sphere[l], flags);
-                }
+                see(*rock, &std::array::from_fn(|l| drawn[*group.get(l).unwrap_or(&group[0])]), group);
             }
         }
     }

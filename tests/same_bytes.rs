@@ -1,18 +1,21 @@
 //! The same bytes whichever way a boulder is computed: alone or sharing its thermal case, in 128-bit or in 256-bit registers, on
 //! one thread or two, in one run or in pieces. Threads, order and folder against stream for the demo: `demo_run.rs`.
 
+#[path = "support/inventory.rs"]
+mod inventory;
 #[path = "support/program.rs"]
 mod program;
 
 use std::collections::BTreeSet;
 use std::ops::ControlFlow;
 
+use inventory::boulder;
 use program::{fixture, spallcast, text};
 use spallcast::assess::Model;
 use spallcast::assess::batch::{Resolution, run, run_portable};
 use spallcast::assess::cases::Cases;
 use spallcast::assess::cover::Burned;
-use spallcast::assess::draws::{BLANK, Body, Sampler};
+use spallcast::assess::draws::Body;
 use spallcast::assess::fires::fires_at;
 use spallcast::fire::exposure::ExposureClass;
 use spallcast::input::{BoulderFeature, Duplicates, read_boulders, read_burns, read_settings};
@@ -21,7 +24,7 @@ use spallcast::output::{BoulderResult, write_boulder_line};
 use spallcast::rock::catalogue::Catalogue;
 use spallcast::rockfall::place::place;
 use spallcast::settings::Settings;
-use spallcast::site::{Burn, HeatingRecord, Kind, Moisture, Position, RockChoice, StandingRecord};
+use spallcast::site::{Boulder, Burn, HeatingRecord, Moisture, StandingRecord};
 
 /// Draws: enough for every family to occur, few enough for a test.
 const DRAWS: usize = 32;
@@ -101,42 +104,19 @@ fn vector_registers_change_no_bit() {
             ("basalt", 0.12, Some(Moisture::Damp)),
             ("chalk", 0.4, None),
         ] {
-            let boulder = spallcast::site::Boulder {
-                id: "b".to_owned(),
-                position: Position { lon_deg: 0.0, lat_deg: 0.0, height_m: None },
-                rock: RockChoice::Named(rock.to_owned()),
-                kind: Kind::Boulder,
-                radius_m: Some(radius_m),
-                axes_m: None,
-                heating: HeatingRecord {
-                    exposure: Some(*class),
-                    moisture,
-                    rind_m: Some(0.01),
-                    ..HeatingRecord::default()
-                },
-                standing: StandingRecord::default(),
-            };
+            let heating =
+                HeatingRecord { exposure: Some(*class), moisture, rind_m: Some(0.01), ..HeatingRecord::default() };
+            let boulder = Boulder { heating, ..boulder(rock, radius_m, *class) };
             let fires = fires_at(&boulder, &[], &mut BTreeSet::new()).expect("a fire of its own");
-            let rocks = model.rocks_of(&boulder.rock);
-            let sampler = Sampler {
-                points: &model.points,
-                tables: &model.tables,
-                rocks: &rocks,
-                flame_front_width_m: model.settings.spall.flame_front_width_m,
-            };
-            let body = Body::of(&boulder);
-            for first in (0..DRAWS).step_by(LANES) {
-                let mut draws = [BLANK; LANES];
-                for (l, draw) in draws.iter_mut().enumerate() {
-                    *draw = sampler.draw(first + l, &boulder, &body, &fires[0]);
-                }
-                let table = &model.tables.rocks[rocks[0].0];
-                let wide = run(&draws, &body, table, &model.settings.spall, &Resolution::RUN);
-                let portable = run_portable(&draws, &body, table, &model.settings.spall, &Resolution::RUN);
-                assert_eq!(wide, portable, "{class:?} {rock} from draw {first}");
+            let (body, rocks) = (Body::of(&boulder), model.rocks_of(&boulder.rock));
+            model.each_group(&boulder, &body, &fires[0], &rocks, |rock_index, draws, numbers| {
+                let table = &model.tables.rocks[rock_index];
+                let wide = run(draws, &body, table, &model.settings.spall, &Resolution::RUN);
+                let portable = run_portable(draws, &body, table, &model.settings.spall, &Resolution::RUN);
+                assert_eq!(wide, portable, "{class:?} {rock} from draw {}", numbers[0]);
                 families.extend(wide.outcomes.iter().flat_map(|o| o.events.iter().map(|e| format!("{:?}", e.family))));
                 batches += 1;
-            }
+            });
         }
     }
     assert_eq!(batches, ExposureClass::ALL.len() * 4 * (DRAWS / LANES));

@@ -10,7 +10,7 @@
 //! temperature of its last node. Stress and tension have no bands here.
 
 use super::batch::{self, Constant, WatchInputs};
-use super::draws::{BLANK, Body, Draw, Sampler};
+use super::draws::{Body, Draw};
 use super::fires::Fire;
 use super::{Model, Quantiles};
 use crate::heat::column::Column;
@@ -63,33 +63,17 @@ impl Model {
     fn histories(&self, boulder: &Boulder, fire: &Fire, depth_m: &[f64], time_s: &[f64]) -> Histories {
         let body = Body::of(boulder);
         let rocks = self.rocks_of(&boulder.rock);
-        let sampler = Sampler {
-            points: &self.points,
-            tables: &self.tables,
-            rocks: &rocks,
-            flame_front_width_m: self.settings.spall.flame_front_width_m,
-        };
-        let draws = self.points.draws();
-        let drawn: Vec<Draw> = (0..draws).map(|j| sampler.draw(j, boulder, &body, fire)).collect();
-        let mut histories = vec![vec![vec![None; draws]; time_s.len()]; depth_m.len()];
-        for (rock, _) in &rocks {
-            let members: Vec<usize> = (0..draws).filter(|j| drawn[*j].rock == *rock).collect();
-            for group in members.chunks(LANES) {
-                // A short last group repeats its first draw to fill the lanes.
-                let mut lanes = [BLANK; LANES];
-                for (l, lane) in lanes.iter_mut().enumerate() {
-                    *lane = drawn[*group.get(l).unwrap_or(&group[0])];
-                }
-                let seen = self.march_seen(&lanes, &body, *rock, depth_m, time_s);
-                for (l, j) in group.iter().enumerate() {
-                    for (k, row) in seen[l].iter().enumerate() {
-                        for (i, value) in row.iter().enumerate() {
-                            histories[i][k][*j] = *value;
-                        }
+        let mut histories = vec![vec![vec![None; self.points.draws()]; time_s.len()]; depth_m.len()];
+        self.each_group(boulder, &body, fire, &rocks, |rock, draws, numbers| {
+            let seen = self.march_seen(draws, &body, rock, depth_m, time_s);
+            for (l, j) in numbers.iter().enumerate() {
+                for (k, row) in seen[l].iter().enumerate() {
+                    for (i, value) in row.iter().enumerate() {
+                        histories[i][k][*j] = *value;
                     }
                 }
             }
-        }
+        });
         histories
     }
 
