@@ -90,7 +90,12 @@ pub(super) struct Worked {
     within: Vec<usize>,
 }
 
-impl Shared<'_> {
+impl<'a> Shared<'a> {
+    /// What the boulders of a run share; no case is solved yet.
+    pub(super) fn new(model: &'a Model, burns: &'a [Burn], terrain: Option<&'a Terrain>) -> Shared<'a> {
+        Shared { model, cases: Cases::new(model), burns, burned: Burned::new(burns), terrain }
+    }
+
     /// Runs one record.
     pub(super) fn work(&self, feature: BoulderFeature) -> Worked {
         let boulder = match &feature.boulder {
@@ -222,13 +227,7 @@ impl Job {
         let clock_run = Instant::now();
         let model =
             Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
-        let shared = Shared {
-            model: &model,
-            cases: Cases::new(&model),
-            burns: &burns.burns,
-            burned: Burned::new(&burns.burns),
-            terrain: terrain.as_ref(),
-        };
+        let shared = Shared::new(&model, &burns.burns, terrain.as_ref());
         let bar = progress(features.len() as u64, messages);
         let worked: Vec<Worked> = features
             .into_par_iter()

@@ -11,8 +11,6 @@ use std::sync::mpsc::{SyncSender, sync_channel};
 use rayon::prelude::*;
 
 use spallcast::assess::Model;
-use spallcast::assess::cases::Cases;
-use spallcast::assess::cover::Burned;
 use spallcast::input::boulders::Summary;
 use spallcast::input::terrain::read_terrain;
 use spallcast::input::{BoulderFeature, Duplicates, read_burns};
@@ -54,13 +52,7 @@ pub fn run(plan: &Plan, messages: &Messages) -> Result<Exit, Stop> {
         .transpose()?
         .map(|read| read.terrain);
     let model = Model::new(plan.settings.clone(), plan.catalogue.clone()).map_err(|e| Stop::Failed(e.to_string()))?;
-    let shared = Shared {
-        model: &model,
-        cases: Cases::new(&model),
-        burns: &burns.burns,
-        burned: Burned::new(&burns.burns),
-        terrain: terrain.as_ref(),
-    };
+    let shared = Shared::new(&model, &burns.burns, terrain.as_ref());
     let (sender, chunks) = sync_channel(AHEAD);
     let (source, catalogue) = (plan.boulders.clone(), plan.catalogue.clone());
     // Not a scoped thread: when the output breaks, nobody waits for a reader that waits for its pipe.
