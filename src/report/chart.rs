@@ -331,13 +331,6 @@ impl Panel {
         );
     }
 
-    /// An upright range with end ticks at `x`, from `low` to `high`, with a dot at the middle.
-    pub fn upright_range(&mut self, x: f64, low: f64, middle: f64, high: f64) {
-        let (x, low, middle, high) = (self.at_x(x), self.at_y(low), self.at_y(middle), self.at_y(high));
-        self.range(&format!("M{x:.1} {low:.1}V{high:.1}M{:.1} {low:.1}h12M{:.1} {high:.1}h12", x - 6.0, x - 6.0));
-        self.dot(x, middle);
-    }
-
     /// A lying range with end ticks at the height of `y`, from `low` to `high`, with a dot at the middle.
     pub fn lying_range(&mut self, y: f64, low: f64, middle: f64, high: f64) {
         let (y, low, middle, high) = (self.at_y(y), self.at_x(low), self.at_x(middle), self.at_x(high));
